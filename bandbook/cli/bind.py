@@ -1,0 +1,31 @@
+"""``bandbook bind``: run what is stale, then write the web pages."""
+
+from pathlib import Path
+
+import click
+
+from bandbook import workflow
+from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell
+from bandbook.website import build_site
+
+
+@click.command(epilog=EXIT_HELP)
+@click.option("--to", metavar="DIR", type=click.Path(file_okay=False), help="Where the pages go (default: site_dir).")
+@click.option("--again", is_flag=True, help="Run also what is fresh.")
+@click.pass_context
+def bind(context: click.Context, to: str | None, again: bool) -> None:  # noqa: FBT001 - a flag of the command line
+    """Run what is stale, then write the web pages. A failing case never stops the others.
+
+    \b
+    Example:
+      bandbook bind
+      bandbook bind --to /tmp/pages
+    """
+    settings = settings_of(context)
+    finished = workflow.run(settings, (), again=again, progress=progress())
+    for message in finished.messages:
+        tell(message)
+    tree = workflow.write_pages(settings, finished)
+    build_site(settings, tree, site_dir=Path(to).resolve() if to else None)
+    click.echo(finished.summary)
+    context.exit(finished.exit_status)

@@ -1,0 +1,61 @@
+"""What every command shares: the book it works on, how errors are told, and progress."""
+
+import sys
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any
+
+import click
+
+from bandbook.errors import BandbookError
+from bandbook.settings import Settings, read_settings
+
+#: Where ``--help`` points for the meaning of an exit status.
+EXIT_HELP = (
+    "Exit: 0 done; 1 failing workings or a reference value disagrees; 2 an author's mistake; 3 the question makes no "
+    "sense for the model; 4 a run timed out or died; 5 damaged bytes."
+)
+
+
+class Door(click.Group):
+    """A group of commands whose errors are told on stderr, never as a traceback."""
+
+    def invoke(self, context: click.Context) -> Any:
+        """Run the command; a book's own error becomes its message and its exit status."""
+        try:
+            return super().invoke(context)
+        except BandbookError as error:
+            tell(str(error))
+            context.exit(error.exit_status)
+        except OSError as error:
+            tell(f"{error.filename or 'the system'}: {error.strerror or error}; the book needs to read and write its folder;"
+                 " check the space left and the rights")
+            context.exit(4)
+
+
+def settings_of(context: click.Context) -> Settings:
+    """Return the settings of the book that the command works on.
+
+    Raises:
+        AuthorError: There is no book here or above, or its settings are wrong.
+    """
+    book = context.find_root().obj
+    return read_settings(Path(book) if book else None, Path.cwd())
+
+
+def tell(message: str) -> None:
+    """Print a message to stderr."""
+    click.echo(message, err=True)
+
+
+def progress() -> Callable[[str], None]:
+    """Return what tells progress: a line each on stderr, overwritten where stderr is a terminal."""
+    if not sys.stderr.isatty():
+        return tell
+
+    def rewrite(line: str) -> None:
+        click.echo(f"\r\033[K{line}", err=True, nl=False)
+        if not line:
+            click.echo("\r\033[K", err=True, nl=False)
+
+    return rewrite

@@ -1,0 +1,25 @@
+"""``bandbook run``: run what is stale."""
+
+import click
+
+from bandbook import workflow
+from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell
+
+
+@click.command(epilog=EXIT_HELP)
+@click.argument("cases", nargs=-1, metavar="[CASE…]")
+@click.option("--again", is_flag=True, help="Run also what is fresh.")
+@click.pass_context
+def run(context: click.Context, cases: tuple[str, ...], again: bool) -> None:  # noqa: FBT001 - a flag of the command line
+    """Run the cases whose result is stale. Running a case runs its author's Python.
+
+    \b
+    Example:
+      bandbook run
+      bandbook run polyenes/butadiene --again
+    """
+    finished = workflow.run(settings_of(context), cases, again=again, progress=progress())
+    for message in finished.messages:
+        tell(message)
+    click.echo(finished.summary)
+    context.exit(finished.exit_status)
