@@ -1,0 +1,61 @@
+"""The diatomic chain: E(k) = ᾱ ± √(h² + β₁² + β₂² + 2β₁β₂ cos k), h = (α_A − α_B)/2."""
+
+from bandbook.lattices.lattice import ALPHA, PERIOD, SQRT3, Lattice, along_x
+from bandbook.model import Coupling, Model, Site
+from bandbook.parameters import Field
+
+FIELDS = (
+    Field("beta_inside", "number", "resonance integral of the bond inside the cell, A–B", unit="eV"),
+    Field("beta_between", "number", "resonance integral of the bond to the next cell, B–A", unit="eV"),
+    Field("alpha_a", "number", "Coulomb integral of A (default: alpha)", unit="eV", default=None),
+    Field("alpha_b", "number", "Coulomb integral of B (default: alpha)", unit="eV", default=None),
+    ALPHA,
+    PERIOD,
+)
+
+
+def diatomic_chain(  # noqa: PLR0913 - the fields of the lattice
+    *,
+    beta_inside: float,
+    beta_between: float,
+    alpha_a: float | None = None,
+    alpha_b: float | None = None,
+    alpha: float = 0.0,
+    period: float | None = None,
+) -> Model:
+    """Return the chain of two kinds of site and two kinds of bond.
+
+    E(k) = ᾱ ± √(h² + β₁² + β₂² + 2β₁β₂ cos k), h = (α_A − α_B)/2; gap 2√(h² + (|β₁| − |β₂|)²).
+
+    Args:
+        beta_inside: Resonance integral A–B, eV.
+        beta_between: Resonance integral B–A of the next cell, eV.
+        alpha_a: Coulomb integral of A, eV.
+        alpha_b: Coulomb integral of B, eV.
+        alpha: Coulomb integral of a site without its own, and the origin of x, eV.
+        period: Repeat of the cell, Å, or ``None``.
+
+    Source: ricemele1982.
+
+    >>> [s.alpha for s in diatomic_chain(beta_inside=-2.0, beta_between=-2.0, alpha_a=0.5, alpha_b=-0.5).sites]
+    [0.5, -0.5]
+    """
+    here = None if period is None else (0.0, 0.0, 0.0)
+    there = None if period is None else (period / 2, period / (2 * SQRT3), 0.0)
+    sites = (
+        Site("A", alpha if alpha_a is None else alpha_a, here),
+        Site("B", alpha if alpha_b is None else alpha_b, there),
+    )
+    bonds = (Coupling(0, 1, beta_inside, (0,)), Coupling(1, 0, beta_between, (1,)))
+    return Model(sites, bonds, dimension=1, vectors=along_x(period), alpha_unit=alpha)
+
+
+DIATOMIC_CHAIN = Lattice(
+    "diatomic-chain",
+    "chain of two kinds of site and of bond",
+    1,
+    "A, B along the chain",
+    FIELDS,
+    diatomic_chain,
+    note="An open piece starts and ends with the bond inside.",
+)
