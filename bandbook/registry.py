@@ -1,0 +1,196 @@
+"""From a name to the member of its family, with near names for a wrong one; the one place that knows every family."""
+
+from collections.abc import Callable, Mapping, Sequence
+from typing import Any, Protocol, TypeVar
+
+from bandbook.analyses import ANALYSES, Analysis, Asked
+from bandbook.errors import AuthorError, PhysicsError, Problem
+from bandbook.exhibits import Answer, QuantityName
+from bandbook.lattices import LATTICES
+from bandbook.model import Model
+from bandbook.parameters import NAME, Field, check, one_of, shown
+from bandbook.systems import FORMS, Form
+
+LATTICE_NAMES = tuple(lattice.name for lattice in LATTICES)
+FORM_NAMES = tuple(form.name for form in FORMS)
+QUESTION_NAMES = tuple(analysis.question for analysis in ANALYSES)
+
+#: Above this many sites a check builds no model: what it would learn is not worth the wait.
+MOST_CHECKED_SITES = 20_000
+
+_STUDY = (
+    Field("question", "text", "the question"),
+    Field("name", "name", "name of the study (default: the question)", default=None),
+    Field("system", "name", "system that is asked", default=None),
+)
+
+
+class _Named(Protocol):
+    @property
+    def name(self) -> str: ...
+
+
+_Member = TypeVar("_Member", bound=_Named)
+
+
+def find(name: str, members: Sequence[_Member], what: str) -> _Member:
+    """Return the member of a name.
+
+    Raises:
+        AuthorError: There is none; near names are offered.
+
+    >>> find("chain", LATTICES, "lattice").dimension
+    1
+    """
+    for member in members:
+        if member.name == name:
+            return member
+    raise AuthorError([one_of(name, [member.name for member in members], what)])
+
+
+def analysis_of(question: str) -> Analysis:
+    """Return the analysis of a question.
+
+    Raises:
+        AuthorError: There is none; near names are offered.
+    """
+    for analysis in ANALYSES:
+        if analysis.question == question:
+            return analysis
+    raise AuthorError([one_of(question, QUESTION_NAMES, "question")])
+
+
+def quantity_names(question: str) -> tuple[QuantityName, ...]:
+    """Return the quantities that a question promises; none for an unknown question."""
+    return next((analysis.quantities for analysis in ANALYSES if analysis.question == question), ())
+
+
+def check_system(given: Mapping[str, Any]) -> tuple[dict[str, Any] | None, list[Problem]]:
+    """Check a system block.
+
+    Returns:
+        The checked parameters with their ``form``, or ``None`` when something is wrong; and every problem.
+    """
+    forms = [form for form in FORMS if form.key in given]
+    if len(forms) != 1:
+        return None, [_form_problem(given, forms)]
+    form = forms[0]
+    checked, problems = check(form.fields(given), given)
+    if form.key == "lattice" and isinstance(given["lattice"], str) and given["lattice"] not in LATTICE_NAMES:
+        return None, [one_of(given["lattice"], LATTICE_NAMES, "lattice").below("lattice")]
+    problems = problems or form.inspect(checked)
+    if problems:
+        return None, problems
+    checked.pop("name", None)
+    return {"form": form.name, **checked}, []
+
+
+def _form_problem(given: Mapping[str, Any], forms: Sequence[Form]) -> Problem:
+    keys = ", ".join(f'"{form.key}" ({form.meaning})' for form in FORMS)
+    if forms:
+        found = "a system of two forms at once: " + " and ".join(f'"{form.key}"' for form in forms)
+        return Problem(found, f"one of {keys}", "keep one of them", (forms[-1].key,))
+    found = "a system of no known form" if given else "an empty system"
+    return Problem(found, f"one of {keys}", "add one of these keys")
+
+
+def check_study(
+    given: Mapping[str, Any], systems: Mapping[str, dict[str, Any] | None]
+) -> tuple[dict[str, Any] | None, list[Problem]]:
+    """Check a study block against the systems of its case.
+
+    Args:
+        given: The block.
+        systems: Name → checked system; ``None`` for a system with mistakes of its own.
+
+    Returns:
+        The checked parameters with ``question`` and ``system``, or ``None``; and every problem.
+    """
+    question = given.get("question")
+    if not isinstance(question, str):
+        return None, [_question_problem(given)]
+    if question not in QUESTION_NAMES:
+        return None, [one_of(question, QUESTION_NAMES, "question").below("question")]
+    analysis = analysis_of(question)
+    checked, problems = check((*_STUDY, *analysis.fields), given)
+    system, found = _system_of(given, systems)
+    problems += found
+    checked["system"] = system
+    if problems or system is None:
+        return None, problems
+    problems = list(analysis.inspect(checked, _model_of(systems[system])))
+    checked.pop("name", None)
+    return (None if problems else checked), problems
+
+
+def _question_problem(given: Mapping[str, Any]) -> Problem:
+    allowed = "questions are " + ", ".join(f'"{name}"' for name in QUESTION_NAMES)
+    if "question" not in given:
+        return Problem('the key "question" is missing', allowed, 'add question = "…"')
+    return Problem(f"found {shown(given['question'])}", allowed, "write its name in quotes", ("question",))
+
+
+def _system_of(
+    given: Mapping[str, Any], systems: Mapping[str, dict[str, Any] | None]
+) -> tuple[str | None, list[Problem]]:
+    name = given.get("system")
+    if name is None and len(systems) == 1:
+        return next(iter(systems)), []
+    if name is None and systems:
+        found = f"the case has {len(systems)} systems and the study names none"
+        return None, [Problem(found, "systems are " + ", ".join(f'"{key}"' for key in systems), 'add system = "…"')]
+    if name is None or not isinstance(name, str) or not NAME.match(name):
+        return None, []
+    return (name, []) if name in systems else (None, [one_of(name, list(systems), "system").below("system")])
+
+
+def _model_of(checked: Mapping[str, Any] | None) -> Model | None:
+    """Return the model that a check may look at; ``None`` where workings build it, it is large, or has mistakes."""
+    if checked is None or checked["form"] == "built-by":
+        return None
+    if isinstance(checked.get("sites"), int) and checked["sites"] > MOST_CHECKED_SITES:
+        return None
+    try:
+        return build_system(checked, {})
+    except (AuthorError, PhysicsError):
+        return None
+
+
+def build_system(checked: Mapping[str, Any], builders: Mapping[str, Callable[..., Any]]) -> Model:
+    """Return the Model of a checked system.
+
+    Args:
+        checked: The checked parameters with their ``form``.
+        builders: The author's functions, for systems built by workings.
+
+    Raises:
+        AuthorError: The author's function is missing or returns no Model.
+        PhysicsError: The model breaks its own invariants.
+
+    >>> build_system(check_system({"lattice": "chain", "beta": -2.5})[0], {}).dimension
+    1
+    """
+    return find(checked["form"], FORMS, "form").build(checked, builders)
+
+
+def answer(study: str, checked: Mapping[str, Any], model: Model) -> Answer:
+    """Return what a study gives: compute, then report, tabulate, draw and warn.
+
+    Raises:
+        PhysicsError: The question makes no sense for the model, or the numbers failed.
+    """
+    analysis = analysis_of(checked["question"])
+    asked = Asked(study, checked, model)
+    result = analysis.compute(asked)
+    quantities = tuple(
+        quantity if quantity.name.startswith(f"{study}.") else quantity.named(f"{study}.{quantity.name}")
+        for quantity in analysis.report(asked, result)
+    )
+    return Answer(
+        study,
+        quantities,
+        tuple(analysis.tabulate(asked, result)),
+        tuple(analysis.draw(asked, result)),
+        tuple(analysis.warn(asked, result)),
+        result,
+    )
