@@ -1,0 +1,60 @@
+"""From checked parameters to a notebook: the same parameters give the same bytes."""
+
+import pprint
+from collections.abc import Mapping
+from typing import Any
+
+ABOUT = (
+    "This notebook was written from a checked case file. Its first code cell carries every parameter; it opens no other\n"
+    "file and reruns wherever `bandbook` is installed. Running it runs the case's author's own Python, if it has any."
+)
+
+
+def seed_of(key: str) -> int:
+    """Return the seed of a key: its first 8 digits.
+
+    >>> seed_of("sha256:0000000fabc")
+    15
+    """
+    return int(key.removeprefix("sha256:")[:8], 16)
+
+
+def compose(parameters: Mapping[str, Any], key: str) -> Any:
+    """Return the notebook of checked parameters: a first cell that carries them, then a cell a step, in file order.
+
+    Args:
+        parameters: Checked parameters, plain JSON.
+        key: Their key; seeds the random generator.
+
+    Returns:
+        An nbformat 4.5 notebook, not executed.
+    """
+    import nbformat.v4
+
+    cells = [nbformat.v4.new_markdown_cell(ABOUT, id="about"), _code(first_cell(parameters, key), "parameters")]
+    for number, (kind, name) in enumerate(parameters["steps"], start=1):
+        source = f"answer({name!r})" if kind == "study" else parameters["workings"][name]
+        cells.append(_code(source, f"step-{number}"))
+    metadata = {
+        "kernelspec": {"name": "python3", "display_name": "Python 3", "language": "python"},
+        "language_info": {"name": "python"},
+    }
+    return nbformat.v4.new_notebook(cells=cells, metadata=metadata)
+
+
+def _code(source: str, name: str) -> Any:
+    import nbformat.v4
+
+    return nbformat.v4.new_code_cell(source, id=name)
+
+
+def first_cell(parameters: Mapping[str, Any], key: str) -> str:
+    """Return the source of the first code cell."""
+    literal = pprint.pformat(dict(parameters), width=100, sort_dicts=True)
+    return (
+        "from bandbook.cells import begin\n\n"
+        f"parameters = {literal}\n"
+        "systems, results, files, rng, report, answer = begin(\n"
+        f"    parameters, seed={seed_of(key)}, namespace=globals()\n"
+        ")"
+    )
