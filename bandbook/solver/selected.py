@@ -1,0 +1,244 @@
+"""A few levels of a large piece: bisection along a chain, shift-invert with a count of levels elsewhere.
+
+No dense matrix is made. The count of levels below an energy σ is the number of negative pivots of ``H − σS = L D Lᵀ``
+(Sylvester's law of inertia); two counts prove that the levels found between two energies are all there are.
+"""
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from bandbook.errors import PhysicsError
+from bandbook.solver.canonical import tolerance
+from bandbook.solver.piece import Piece
+
+if TYPE_CHECKING:
+    from scipy.sparse import csr_array
+
+#: Levels that are computed at most in one window.
+MOST_LEVELS: Final = 400
+#: Times a shift is moved when a factorisation fails at it.
+TRIALS: Final = 8
+#: Part of the spectrum's width by which a shift is moved then.
+NUDGE: Final = 1.37e-9
+
+
+def has_tridiagonal(piece: Piece) -> bool:
+    """Whether the piece is an unbranched open chain without overlap, so that H is tridiagonal along it."""
+    return not piece.has_overlap and piece.n_sites > 1 and piece.path is not None
+
+
+def chain_levels(
+    piece: Piece, *, window: tuple[int, int] | None = None
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return levels and orbitals of an unbranched open chain, ``(state,)`` and ``(site, state)``; all, or first to last."""
+    from scipy.linalg import eigh_tridiagonal
+
+    alpha, beta, order = _along(piece)
+    if window is None:
+        energy, along = eigh_tridiagonal(alpha, beta)
+    else:
+        energy, along = eigh_tridiagonal(alpha, beta, select="i", select_range=(window[0], window[1] - 1))
+    vectors = np.empty_like(along)
+    vectors[order] = along
+    return energy, vectors
+
+
+def _along(piece: Piece) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.intp]]:
+    chain, order = piece.chain, piece.path
+    if chain is None or order is None:
+        raise PhysicsError("the piece branches; an unbranched open chain is needed; use the general solver")
+    return *chain, order
+
+
+def window_energies(piece: Piece, *, first: int, last: int) -> NDArray[np.float64]:
+    """Return the levels number ``first`` (from 0) to before ``last``, ascending, eV.
+
+    Raises:
+        PhysicsError: The levels could not be told with certainty.
+    """
+    if has_tridiagonal(piece):
+        from scipy.linalg import eigh_tridiagonal
+
+        alpha, beta, _ = _along(piece)
+        return eigh_tridiagonal(alpha, beta, eigvals_only=True, select="i", select_range=(first, last - 1))
+    energy, _, start = window_levels(piece, first=first, last=last)
+    return energy[first - start : last - start]
+
+
+def window_levels(
+    piece: Piece, *, first: int, last: int
+) -> tuple[NDArray[np.float64], NDArray[np.float64], int]:
+    """Return at least the levels number ``first`` (from 0) to before ``last``.
+
+    Returns:
+        Energies, ascending, eV, ``(state,)``; orbitals, ``(site, state)``; how many levels lie below the first of them
+        (fewer than ``first`` when a degenerate group is completed).
+
+    Raises:
+        PhysicsError: Too many levels lie that close together, the overlap matrix is not positive definite, or the
+            levels found are not as many as the counts demand.
+    """
+    if has_tridiagonal(piece):
+        return *chain_levels(piece, window=(first, last)), first
+    H, S = piece.sparse
+    _check_overlap(S)
+    bounds = spectrum_bounds(piece)
+    spectrum = Spectrum(H, S, piece.n_sites, *bounds)
+    low, n_low = spectrum.shift(first, side=-1)
+    high, n_high = spectrum.shift(last, side=1)
+    wanted = n_high - n_low
+    if wanted > MOST_LEVELS:
+        raise PhysicsError(
+            f"{wanted} levels of the piece lie between {low:.6g} and {high:.6g} eV around the Fermi energy; at most "
+            f"{MOST_LEVELS} are computed in a piece of this size; take fewer cells"
+        )
+    energy, vectors = _between(spectrum, low=low, high=high, wanted=wanted)
+    return energy, vectors, n_low
+
+
+@dataclass(frozen=True)
+class Spectrum:
+    """A symmetric pair H, S and the bounds of its levels, eV."""
+
+    H: "csr_array"
+    S: "csr_array | None"
+    size: int
+    bottom: float
+    top: float
+
+    @property
+    def near(self) -> float:
+        """Distance within which levels are degenerate, eV."""
+        return tolerance(self.top - self.bottom)
+
+    def factor(self, shift: float) -> tuple[Any, int, float]:
+        """Return a factorisation of H − σS, the number of levels below σ, and σ (moved a little where none exists)."""
+        from scipy.sparse.linalg import splu
+
+        step = NUDGE * (self.top - self.bottom)
+        for trial in range(TRIALS):
+            moved = shift + step * trial
+            matrix = (self.H - moved * (_unit(self.size) if self.S is None else self.S)).tocsc()
+            try:
+                factors = splu(
+                    matrix,
+                    permc_spec="MMD_AT_PLUS_A",
+                    diag_pivot_thresh=0.0,
+                    options={"SymmetricMode": True, "Equil": False},
+                )
+            except RuntimeError:
+                continue
+            if np.array_equal(factors.perm_r, factors.perm_c) and _is_accurate(matrix, factors):
+                return factors, int(np.count_nonzero(factors.U.diagonal() < 0)), moved
+        raise PhysicsError(
+            f"levels below {shift:.6g} eV could not be counted; a count is the proof that the right levels were found; "
+            "take fewer cells"
+        )
+
+    def shift(self, wanted: int, *, side: int) -> tuple[float, int]:
+        """Return an energy with about ``wanted`` levels below it, and that number.
+
+        With ``side`` −1 it is at most ``wanted``, with +1 at least, and no more than a few off unless levels coincide.
+        """
+        if wanted in {0, self.size}:
+            return (self.bottom, 0) if wanted == 0 else (self.top, self.size)
+        low, high, n_low, n_high = self.bottom, self.top, 0, self.size
+        slack = 24
+        while high - low > self.near:
+            middle = low + 0.49 * (high - low)
+            _, count, middle = self.factor(middle)
+            if 0 <= side * (count - wanted) <= slack:
+                return middle, count
+            if count < wanted or (count == wanted and side < 0):
+                low, n_low = middle, count
+            else:
+                high, n_high = middle, count
+        return (low, n_low) if side < 0 else (high, n_high)
+
+
+def _unit(size: int) -> "csr_array":
+    from scipy.sparse import eye_array
+
+    return eye_array(size, format="csr")
+
+
+def _is_accurate(matrix: Any, factors: Any) -> bool:
+    """Return whether a solution with the factors has a small residual, so that the pivots did not grow."""
+    right = np.cos(np.arange(matrix.shape[0], dtype=np.float64))
+    found = factors.solve(right)
+    scale = float(np.abs(matrix).max()) * float(np.abs(found).max()) + 1.0
+    return bool(np.isfinite(scale)) and float(np.abs(matrix @ found - right).max()) <= 1e-8 * scale
+
+
+def _between(
+    spectrum: Spectrum, *, low: float, high: float, wanted: int
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return all levels between two energies; the counts say how many there must be."""
+    from scipy.sparse.linalg import ArpackError, LinearOperator, eigsh
+
+    factors, _, middle = spectrum.factor((low + high) / 2)
+    inverse = LinearOperator((spectrum.size,) * 2, matvec=factors.solve, dtype=np.float64)
+    begin = np.cos(np.arange(spectrum.size) ** 1.5) + 0.1
+    for trial in (1, 2, 4):
+        try:
+            energy, vectors = eigsh(
+                spectrum.H,
+                k=min(wanted + trial, spectrum.size - 1),
+                M=spectrum.S,
+                sigma=middle,
+                OPinv=inverse,
+                v0=begin,
+                ncv=min(spectrum.size, trial * (2 * wanted + 20)),
+            )
+        except ArpackError:
+            continue
+        order = np.argsort(energy)
+        inside = order[(energy[order] > low) & (energy[order] < high)]
+        if len(inside) == wanted:
+            return energy[inside], _orthonormal(vectors[:, inside], spectrum.S)
+    raise PhysicsError(
+        f"{wanted} levels lie between {low:.6g} and {high:.6g} eV but not all of them could be found; "
+        "the count is the proof; take fewer cells"
+    )
+
+
+def _orthonormal(vectors: NDArray[np.float64], S: "csr_array | None") -> NDArray[np.float64]:
+    """Return the vectors made orthonormal (S-orthonormal) to the last bits, in order."""
+    gram = vectors.T @ (vectors if S is None else S @ vectors)
+    return np.linalg.solve(np.linalg.cholesky(gram), vectors.T).T
+
+
+def spectrum_bounds(piece: Piece) -> tuple[float, float]:
+    """Return two energies between which all levels of a piece lie, eV (Gershgorin's circles)."""
+    reach = np.zeros(piece.n_sites)
+    np.add.at(reach, piece.start, np.abs(piece.beta))
+    np.add.at(reach, piece.end, np.abs(piece.beta))
+    low, high = float((piece.alpha - reach).min()), float((piece.alpha + reach).max())
+    margin = 1e-3 * (high - low) + 1e-6
+    low, high = low - margin, high + margin
+    if not piece.has_overlap:
+        return low, high
+    H, S = piece.sparse
+    while Spectrum(H, S, piece.n_sites, low, high).factor(low)[1] > 0:
+        low -= high - low
+    while Spectrum(H, S, piece.n_sites, low, high).factor(high)[1] < piece.n_sites:
+        high += high - low
+    return low, high
+
+
+def _check_overlap(S: "csr_array | None") -> None:
+    """Raise when the overlap matrix is not positive definite."""
+    if S is None:
+        return
+    from scipy.sparse.linalg import eigsh
+
+    negative = Spectrum(S, None, S.shape[0], 0.0, 2.0).factor(1e-8)[1]
+    if negative:
+        least = float(eigsh(S, k=1, which="SA", return_eigenvectors=False)[0])
+        raise PhysicsError(
+            f"the smallest eigenvalue of the overlap matrix of the piece is {least:.3g}; it must be positive, at least "
+            "1e-08; make the overlaps smaller"
+        )
