@@ -77,9 +77,7 @@ def _bonds(model: Model, shape: Cell, *, index: int, is_ring: bool) -> tuple[NDA
     reached = [axis + move for axis, move in zip(np.unravel_index(homes, shape), step, strict=True)]
     if is_ring:
         reached = [axis % length for axis, length in zip(reached, shape, strict=True)]
-    inside = np.logical_and.reduce(
-        [(axis >= 0) & (axis < length) for axis, length in zip(reached, shape, strict=True)]
-    )
+    inside = np.logical_and.reduce([(axis >= 0) & (axis < length) for axis, length in zip(reached, shape, strict=True)])
     targets = np.ravel_multi_index([axis[inside] for axis in reached], shape)
     n = model.n_sites
     return homes[inside] * n + coupling.start, targets.astype(np.intp) * n + coupling.end

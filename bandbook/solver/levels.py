@@ -173,9 +173,7 @@ def _settled(
     return energy + 0.0, vectors
 
 
-def fill(
-    energy: NDArray[np.float64], groups: tuple[slice, ...], *, electrons: float, below: int = 0
-) -> Filling:
+def fill(energy: NDArray[np.float64], groups: tuple[slice, ...], *, electrons: float, below: int = 0) -> Filling:
     """Return how electrons fill levels from below, two a level; a partly filled group is filled evenly.
 
     Args:
@@ -206,9 +204,7 @@ def fill(
     return Filling(occupation, homo, lumo, is_open)
 
 
-def _participation(
-    piece: Piece, vectors: NDArray[np.float64], groups: tuple[slice, ...]
-) -> NDArray[np.float64]:
+def _participation(piece: Piece, vectors: NDArray[np.float64], groups: tuple[slice, ...]) -> NDArray[np.float64]:
     populations = piece.populations(vectors)
     ratios = np.empty(vectors.shape[1])
     for part in groups:
@@ -225,9 +221,7 @@ def _window(piece: Piece, each_side: int) -> tuple[int, int]:
 
 def _selected(piece: Piece, each_side: int) -> Levels:
     low, high = _window(piece, each_side)
-    energy, vectors, first = window_levels(
-        piece, first=max(0, low - MARGIN), last=min(piece.n_sites, high + MARGIN)
-    )
+    energy, vectors, first = window_levels(piece, first=max(0, low - MARGIN), last=min(piece.n_sites, high + MARGIN))
     bottom, top = spectrum_bounds(piece)
     groups = group_levels(energy, top - bottom)
     energy, vectors = _settled(energy, vectors, groups)

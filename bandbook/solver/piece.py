@@ -89,7 +89,9 @@ class Piece:
         from scipy.sparse import coo_array
         from scipy.sparse.csgraph import breadth_first_order
 
-        links = coo_array((np.ones(self.n_sites - 1), (self.start[bonded], self.end[bonded])), shape=(self.n_sites,) * 2)
+        links = coo_array(
+            (np.ones(self.n_sites - 1), (self.start[bonded], self.end[bonded])), shape=(self.n_sites,) * 2
+        )
         order = breadth_first_order(links.tocsr(), int(ends[0]), directed=False, return_predecessors=False)
         return order.astype(np.intp) if len(order) == self.n_sites else None
 
@@ -110,7 +112,9 @@ class Piece:
     @cached_property
     def sparse(self) -> tuple["csr_array", "csr_array | None"]:
         """The sparse H, eV, and S (``None`` without overlap), both ``(site, site)`` and symmetric."""
-        return _sparse(self, self.alpha, self.beta), _sparse(self, self.norm, self.overlap) if self.has_overlap else None
+        return _sparse(self, self.alpha, self.beta), _sparse(
+            self, self.norm, self.overlap
+        ) if self.has_overlap else None
 
     @property
     def chain(self) -> tuple[NDArray[np.float64], NDArray[np.float64]] | None:

@@ -68,9 +68,7 @@ def window_energies(piece: Piece, *, first: int, last: int) -> NDArray[np.float6
     return energy[first - start : last - start]
 
 
-def window_levels(
-    piece: Piece, *, first: int, last: int
-) -> tuple[NDArray[np.float64], NDArray[np.float64], int]:
+def window_levels(piece: Piece, *, first: int, last: int) -> tuple[NDArray[np.float64], NDArray[np.float64], int]:
     """Return at least the levels number ``first`` (from 0) to before ``last``.
 
     Returns:
