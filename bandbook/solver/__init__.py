@@ -1,7 +1,7 @@
 """Hamiltonians, levels, bands: arrays in, small result objects out.
 
-The folder's rule: a function takes a model or a piece and keyword arguments, prints nothing, keeps nothing between calls
-that could change a result, and returns energies in eV, ascending, as ``(k, state)`` or ``(state,)``, orbitals as
+The folder's rule: a function takes a model or a piece and keyword arguments, prints nothing, keeps nothing between
+calls that could change a result, and returns energies in eV, ascending, as ``(k, state)`` or ``(state,)``, orbitals as
 ``(site, state)``, k in π/a. What depends on the processor (signs, degenerate bases) is settled in ``canonical`` before
 anything leaves. scipy is imported where it is used.
 """

@@ -6,6 +6,7 @@ continuous, with a kink where two cross.
 
 from dataclasses import dataclass
 from functools import lru_cache
+from itertools import pairwise
 from typing import Final
 
 import numpy as np
@@ -193,7 +194,7 @@ def _stretches(mesh: BlochStates, band: int, *, is_flat: NDArray[np.bool_], widt
     bounds = [0, *turns.tolist(), len(way)]
     level = SLOPE * width
     found = []
-    for start, stop in zip(bounds[:-1], bounds[1:], strict=True):
+    for start, stop in pairwise(bounds):
         if way[start] == 0 and is_flat[start]:
             continue
         part = slice(start, stop + 1)
@@ -221,8 +222,10 @@ def solve_for_k(crystal: Branches, energies: NDArray[np.float64]) -> list[Soluti
     edges = [found for branch in crystal.branches for found in _edges(crystal, branch, energies)]
     taken = {(found.row, found.band, found.k) for found in edges}
     brackets = [_brackets(crystal, branch, energies, taken) for branch in crystal.branches]
-    row, band, low, high = (np.concatenate(part) if part else np.zeros(0) for part in zip(*brackets, strict=True))
-    row, band = row.astype(np.intp), band.astype(np.intp)
+    row = np.concatenate([np.zeros(0, dtype=np.intp), *(found[0] for found in brackets)])
+    band = np.concatenate([np.zeros(0, dtype=np.intp), *(found[1] for found in brackets)])
+    low = np.concatenate([np.zeros(0), *(found[2] for found in brackets)])
+    high = np.concatenate([np.zeros(0), *(found[3] for found in brackets)])
     k = _roots(crystal.model, energies[row], band, low=low, high=high)
     inner = [Solution(int(r), float(x), int(b), is_edge=False) for r, b, x in zip(row, band, k, strict=True)]
     return sorted({*edges, *inner}, key=lambda found: (found.row, found.k, found.band))
@@ -269,6 +272,8 @@ def _roots(
 ) -> NDArray[np.float64]:
     """Return k with E_band(k) = energy inside each bracket: Newton's steps, halving where one leaves the bracket."""
     k = (low + high) / 2
+    if not len(k):
+        return k
     open_ = np.arange(len(k))
     scale = 4 * np.finfo(np.float64).eps * (1.0 + float(np.abs(energies).max(initial=0.0)))
     rising = _values(model, high, band)[0] > _values(model, low, band)[0]

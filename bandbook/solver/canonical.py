@@ -68,7 +68,7 @@ def canonical_basis(vectors: NDArray[np.float64]) -> NDArray[np.float64]:
         Orthonormal columns, ``(site, g)``, in the order of their pivots.
 
     >>> turned = np.array([[0.6, -0.8], [0.8, 0.6], [0.0, 0.0]])
-    >>> canonical_basis(turned).round(12).tolist()
+    >>> (canonical_basis(turned).round(12) + 0.0).tolist()
     [[1.0, 0.0], [0.0, 1.0], [0.0, 0.0]]
     """
     size = vectors.shape[1]

@@ -170,7 +170,7 @@ def _bond(draft: Draft, change: Mapping[str, Any], *, one: int) -> tuple[int | N
 
 
 def _crystal_row(draft: Draft, index: int, *, one: int, name: str, is_start: bool) -> int | None:
-    """Return the row of the copy of one coupling that starts (or ends) at site ``one`` and has ``name`` at its other end."""
+    """Return the row of the copy of one coupling that starts (or ends) at site ``one`` with ``name`` at the other."""
     coupling = draft.model.couplings[index]
     near, far = (coupling.start, coupling.end) if is_start else (coupling.end, coupling.start)
     if near != one % draft.model.n_sites or far != site_index(draft.model, name):

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from bandbook.errors import PhysicsError
 from bandbook.solver.canonical import canonical_basis, fix_signs, group_levels
+from bandbook.solver.hamiltonian import LEAST_OVERLAP
 from bandbook.solver.piece import Piece
 from bandbook.solver.selected import chain_levels, has_tridiagonal, spectrum_bounds, window_energies, window_levels
 
@@ -16,8 +17,6 @@ from bandbook.solver.selected import chain_levels, has_tridiagonal, spectrum_bou
 MOST_IN_FULL: Final = 2_000
 #: Levels computed beyond the window, so that a degenerate group is seen whole.
 MARGIN: Final = 4
-#: Least eigenvalue of the overlap matrix that counts as positive.
-LEAST_OVERLAP: Final = 1e-8
 
 
 @dataclass(frozen=True, eq=False)
@@ -29,7 +28,7 @@ class Levels:
         vectors: Orbitals, ``(site, state)``, in the canonical basis; orthonormal (with overlap: S-orthonormal).
         occupation: Electrons of each level, 0 to 2, ``(state,)``.
         groups: The degenerate groups as slices into the levels.
-        participation: 1/Σ p² of the populations p of the level's group, ``(state,)``: about how many sites it spreads over.
+        participation: 1/Σ p² of the populations p of the level's group, ``(state,)``: over how many sites it spreads.
         first: How many levels lie below the first one here; level number n of entry i is ``first + i + 1``.
         n_levels: Levels of the piece.
         is_selected: Whether only levels around the Fermi energy are here.

@@ -1,9 +1,9 @@
 """Where the levels of a piece lie on the bands of its crystal: k, its quality W, gap levels and their place.
 
 For a level of energy E the candidates are all k in [0, π/a] with E_b(k) = E. Q_k projects on the Bloch states
-``e^{ikm} u_bs(k)`` of energy E at ±k, restricted to the piece; for a degenerate group with projector P, W is the mean of
-the d largest eigenvalues of P Q_k P, d the number of those above ½ (at least 1). Candidates in falling W, then rising k,
-fill the group.
+``e^{ikm} u_bs(k)`` of energy E at ±k, restricted to the piece; for a degenerate group with projector P, W is the mean
+of the d largest eigenvalues of P Q_k P, d the number of those above ½ (at least 1). Candidates in falling W, then
+rising k, fill the group.
 """
 
 from collections.abc import Sequence

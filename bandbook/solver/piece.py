@@ -79,7 +79,7 @@ class Piece:
 
     @cached_property
     def path(self) -> NDArray[np.intp] | None:
-        """Order of the sites along an unbranched open chain, from the end with the lower number; ``None`` for anything else."""
+        """Order of the sites along an unbranched open chain, from the end with the lower number; otherwise ``None``."""
         bonded = self.beta != 0
         ends = np.flatnonzero(self.coordination == 1)
         if self.n_sites == 1:
@@ -104,8 +104,8 @@ class Piece:
         if self.n_sites > MOST_DENSE:
             gigabytes = 8 * self.n_sites**2 / 1e9
             raise PhysicsError(
-                f"{self.n_sites} sites need {gigabytes:.1f} GB for a dense matrix; at most {MOST_DENSE} sites are solved "
-                "in full; take fewer cells"
+                f"{self.n_sites} sites need {gigabytes:.1f} GB for a dense matrix; at most {MOST_DENSE} sites are "
+                "solved in full; take fewer cells"
             )
         return _dense(self, self.alpha, self.beta), _dense(self, self.norm, self.overlap) if self.has_overlap else None
 
@@ -118,7 +118,7 @@ class Piece:
 
     @property
     def chain(self) -> tuple[NDArray[np.float64], NDArray[np.float64]] | None:
-        """Coulomb and resonance integrals along :attr:`path`, eV, ``(site,)`` and ``(site − 1,)``; ``None`` without one."""
+        """Coulomb and resonance integrals along :attr:`path`, eV, ``(site,)`` and ``(site − 1,)``, if there is one."""
         order = self.path
         if order is None:
             return None
@@ -248,8 +248,9 @@ def _summed(
     if len(pairs) == len(start):
         return start, end, beta, overlap
     row = row.reshape(-1)
-    sums = (np.bincount(row, weights=values, minlength=len(pairs)) for values in (beta, overlap))
-    return pairs[:, 0], pairs[:, 1], *sums
+    sums = np.zeros((len(pairs), 2))
+    np.add.at(sums, row, np.stack([beta, overlap], axis=1))
+    return pairs[:, 0], pairs[:, 1], sums[:, 0], sums[:, 1]
 
 
 def _electrons(model: Model, sites: NDArray[np.intp]) -> int:

@@ -5,17 +5,19 @@ No dense matrix is made. The count of levels below an energy σ is the number of
 """
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any, Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from bandbook.errors import PhysicsError
 from bandbook.solver.canonical import tolerance
+from bandbook.solver.hamiltonian import LEAST_OVERLAP
 from bandbook.solver.piece import Piece
 
 if TYPE_CHECKING:
-    from scipy.sparse import csr_array
+    from scipy.sparse import csc_array, csr_array
+    from scipy.sparse.linalg import SuperLU
 
 #: Levels that are computed at most in one window.
 MOST_LEVELS: Final = 400
@@ -33,7 +35,7 @@ def has_tridiagonal(piece: Piece) -> bool:
 def chain_levels(
     piece: Piece, *, window: tuple[int, int] | None = None
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Return levels and orbitals of an unbranched open chain, ``(state,)`` and ``(site, state)``; all, or first to last."""
+    """Return levels ``(state,)`` and orbitals ``(site, state)`` of an unbranched open chain: all, or first to last."""
     from scipy.linalg import eigh_tridiagonal
 
     alpha, beta, order = _along(piece)
@@ -41,9 +43,9 @@ def chain_levels(
         energy, along = eigh_tridiagonal(alpha, beta)
     else:
         energy, along = eigh_tridiagonal(alpha, beta, select="i", select_range=(window[0], window[1] - 1))
-    vectors = np.empty_like(along)
+    vectors = np.empty(along.shape)
     vectors[order] = along
-    return energy, vectors
+    return np.asarray(energy, dtype=np.float64), vectors
 
 
 def _along(piece: Piece) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.intp]]:
@@ -63,7 +65,9 @@ def window_energies(piece: Piece, *, first: int, last: int) -> NDArray[np.float6
         from scipy.linalg import eigh_tridiagonal
 
         alpha, beta, _ = _along(piece)
-        return eigh_tridiagonal(alpha, beta, eigvals_only=True, select="i", select_range=(first, last - 1))
+        chosen = (first, last - 1)
+        energy = eigh_tridiagonal(alpha, beta, eigvals_only=True, select="i", select_range=chosen)
+        return np.asarray(energy, dtype=np.float64)
     energy, _, start = window_levels(piece, first=first, last=last)
     return energy[first - start : last - start]
 
@@ -112,7 +116,7 @@ class Spectrum:
         """Distance within which levels are degenerate, eV."""
         return tolerance(self.top - self.bottom)
 
-    def factor(self, shift: float) -> tuple[Any, int, float]:
+    def factor(self, shift: float) -> tuple["SuperLU", int, float]:
         """Return a factorisation of H − σS, the number of levels below σ, and σ (moved a little where none exists)."""
         from scipy.sparse.linalg import splu
 
@@ -163,11 +167,11 @@ def _unit(size: int) -> "csr_array":
     return eye_array(size, format="csr")
 
 
-def _is_accurate(matrix: Any, factors: Any) -> bool:
+def _is_accurate(matrix: "csc_array", factors: "SuperLU") -> bool:
     """Return whether a solution with the factors has a small residual, so that the pivots did not grow."""
     right = np.cos(np.arange(matrix.shape[0], dtype=np.float64))
     found = factors.solve(right)
-    scale = float(np.abs(matrix).max()) * float(np.abs(found).max()) + 1.0
+    scale = float(np.abs(matrix.data).max(initial=0.0)) * float(np.abs(found).max()) + 1.0
     return bool(np.isfinite(scale)) and float(np.abs(matrix @ found - right).max()) <= 1e-8 * scale
 
 
@@ -233,10 +237,10 @@ def _check_overlap(S: "csr_array | None") -> None:
         return
     from scipy.sparse.linalg import eigsh
 
-    negative = Spectrum(S, None, S.shape[0], 0.0, 2.0).factor(1e-8)[1]
+    negative = Spectrum(S, None, S.shape[0], 0.0, 2.0).factor(LEAST_OVERLAP)[1]
     if negative:
         least = float(eigsh(S, k=1, which="SA", return_eigenvectors=False)[0])
         raise PhysicsError(
             f"the smallest eigenvalue of the overlap matrix of the piece is {least:.3g}; it must be positive, at least "
-            "1e-08; make the overlaps smaller"
+            f"{LEAST_OVERLAP:g}; make the overlaps smaller"
         )
