@@ -20,7 +20,10 @@ from bandbook.solver.canonical import tolerance
 #: Intervals of the first mesh.
 FIRST_MESH: Final = 64
 #: How often an interval is halved at most while the mesh is made.
-DEEPEST: Final = 22
+DEEPEST: Final = 14
+#: Steps that the search for an extreme or kink takes at most, and how close to a known point it ends, π/a.
+MOST_STEPS: Final = 150
+CLOSE: Final = 1e-13
 #: Part of the total width by which a cubic through the ends of an interval may miss the band at its middle.
 MISS: Final = 1e-8
 #: Part of the total width within which a level takes the k of a band edge.
@@ -41,12 +44,16 @@ class Branch:
         band: Number of the band, from 0, ascending.
         k: Mesh, rising, π/a, ``(node,)``; the ends are extremes or kinks of the band, or the zone's ends.
         energy: Energies at the mesh, eV, monotone, ``(node,)``.
+        slope_before: dE/dk below each node, eV per π/a, ``(node,)``.
+        slope_after: dE/dk above each node; different where bands touch.
         is_smooth: Whether the band is level at the first and the last node.
     """
 
     band: int
     k: NDArray[np.float64]
     energy: NDArray[np.float64]
+    slope_before: NDArray[np.float64]
+    slope_after: NDArray[np.float64]
     is_smooth: tuple[bool, bool]
 
 
@@ -154,16 +161,48 @@ def _with_extremes(model: Model, mesh: BlochStates) -> BlochStates:
     left, band = np.nonzero(after[:-1] * before[1:] < 0)
     if not len(left):
         return mesh
-    low, high = mesh.k[left], mesh.k[left + 1]
-    rising = mesh.slope_after[left, band] > 0
-    each = np.arange(len(left))
-    for _ in range(60):
-        middle = (low + high) / 2
-        is_before = (bloch_states(model, middle).slope_before[each, band] > 0) == rising
-        low, high = np.where(is_before, middle, low), np.where(is_before, high, middle)
-        if np.all((middle == low) | (middle == high)) and np.all(high - low < 1e-15):
+    found = _turns(model, mesh, left, band)
+    return mesh.joined(bloch_states(model, _apart(found, mesh.k)))[0]
+
+
+def _turns(
+    model: Model, mesh: BlochStates, left: NDArray[np.intp], band: NDArray[np.intp]
+) -> NDArray[np.float64]:
+    """Return k of the extreme or kink in each interval, where the band's slopes at the two ends differ in sign.
+
+    In turn: where the tangents at the ends meet (exact for a kink) and where the slope's secant is zero (fast for a
+    smooth extreme); halving once in three steps bounds the number of steps.
+    """
+    low = np.stack([mesh.k[left], mesh.energy[left, band], mesh.slope_after[left, band]])
+    high = np.stack([mesh.k[left + 1], mesh.energy[left + 1, band], mesh.slope_before[left + 1, band]])
+    found = (low[0] + high[0]) / 2
+    open_ = np.arange(len(left))
+    for step in range(MOST_STEPS):
+        one, two = low[:, open_], high[:, open_]
+        k = np.clip(_guess(one, two, step % 3), one[0], two[0])
+        found[open_] = k
+        open_ = open_[(k - one[0] > CLOSE) & (two[0] - k > CLOSE)]
+        if not len(open_):
             break
-    return mesh.joined(bloch_states(model, _apart((low + high) / 2, mesh.k)))[0]
+        k, each = found[open_], (np.arange(len(open_)), band[open_])
+        states = bloch_states(model, k)
+        here = np.stack([k, states.energy[each], states.slope_before[each]])
+        is_before = (here[2] > 0) == (low[2, open_] > 0)
+        low[:, open_[is_before]] = here[:, is_before]
+        high[:, open_[~is_before]] = here[:, ~is_before]
+    return found
+
+
+def _guess(one: NDArray[np.float64], two: NDArray[np.float64], way: int) -> NDArray[np.float64]:
+    """Return where the band turns between two points (k, energy, slope): by tangents, by the slope, or halfway."""
+    (k, energy, slope), (k_two, energy_two, slope_two) = one, two
+    if way == 0:
+        guess: NDArray[np.float64] = k + (energy_two - energy - slope_two * (k_two - k)) / (slope - slope_two)
+    elif way == 1:
+        guess = k + slope * (k_two - k) / (slope - slope_two)
+    else:
+        guess = (k + k_two) / 2
+    return guess
 
 
 def _apart(found: NDArray[np.float64], known: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -199,7 +238,8 @@ def _stretches(mesh: BlochStates, band: int, *, is_flat: NDArray[np.bool_], widt
             continue
         part = slice(start, stop + 1)
         smooth = bool(abs(mesh.slope_after[start, band]) < level), bool(abs(mesh.slope_before[stop, band]) < level)
-        found.append(Branch(band, mesh.k[part], energy[part], smooth))
+        slopes = mesh.slope_before[part, band], mesh.slope_after[part, band]
+        found.append(Branch(band, mesh.k[part], energy[part], *slopes, is_smooth=smooth))
     return found
 
 
@@ -223,10 +263,9 @@ def solve_for_k(crystal: Branches, energies: NDArray[np.float64]) -> list[Soluti
     taken = {(found.row, found.band, found.k) for found in edges}
     brackets = [_brackets(crystal, branch, energies, taken) for branch in crystal.branches]
     row = np.concatenate([np.zeros(0, dtype=np.intp), *(found[0] for found in brackets)])
-    band = np.concatenate([np.zeros(0, dtype=np.intp), *(found[1] for found in brackets)])
-    low = np.concatenate([np.zeros(0), *(found[2] for found in brackets)])
-    high = np.concatenate([np.zeros(0), *(found[3] for found in brackets)])
-    k = _roots(crystal.model, energies[row], band, low=low, high=high)
+    band = np.repeat([branch.band for branch in crystal.branches], [len(found[0]) for found in brackets])
+    ends = np.concatenate([np.zeros((6, 0)), *(found[1] for found in brackets)], axis=1)
+    k = _roots(crystal.model, energies[row], band, ends)
     inner = [Solution(int(r), float(x), int(b), is_edge=False) for r, b, x in zip(row, band, k, strict=True)]
     return sorted({*edges, *inner}, key=lambda found: (found.row, found.k, found.band))
 
@@ -248,36 +287,34 @@ def _edges(crystal: Branches, branch: Branch, energies: NDArray[np.float64]) -> 
 
 def _brackets(
     crystal: Branches, branch: Branch, energies: NDArray[np.float64], taken: set[tuple[int, int, float]]
-) -> tuple[NDArray[np.intp], NDArray[np.intp], NDArray[np.float64], NDArray[np.float64]]:
-    """Return row, band and the two mesh nodes around k for each energy that the branch takes."""
+) -> tuple[NDArray[np.intp], NDArray[np.float64]]:
+    """Return the rows whose energy the branch takes, and the mesh around each k: k, energy and slope, low then high."""
     rising = bool(branch.energy[-1] >= branch.energy[0])
-    energy, k = (branch.energy, branch.k) if rising else (branch.energy[::-1], branch.k[::-1])
-    ends = (float(branch.k[0]), float(branch.k[-1]))
+    energy = branch.energy if rising else branch.energy[::-1]
+    limits = (float(branch.k[0]), float(branch.k[-1]))
     slack = HOLE * crystal.total_width
     rows = np.flatnonzero((energies >= energy[0] - slack) & (energies <= energy[-1] + slack))
-    free = [not any((int(row), branch.band, end) in taken for end in ends) for row in rows]
+    free = [not any((int(row), branch.band, end) in taken for end in limits) for row in rows]
     rows = rows[np.array(free, dtype=np.bool_)]
     at = np.clip(np.searchsorted(energy, energies[rows]), 1, len(energy) - 1)
-    one, two = k[at - 1], k[at]
-    return rows, np.full(len(rows), branch.band, dtype=np.intp), np.minimum(one, two), np.maximum(one, two)
+    low = at - 1 if rising else len(energy) - 1 - at
+    points = (branch.k, branch.energy, branch.slope_after, branch.slope_before)
+    k, level, after, before = points
+    return rows, np.stack([k[low], level[low], after[low], k[low + 1], level[low + 1], before[low + 1]])
 
 
 def _roots(
-    model: Model,
-    energies: NDArray[np.float64],
-    band: NDArray[np.intp],
-    *,
-    low: NDArray[np.float64],
-    high: NDArray[np.float64],
+    model: Model, energies: NDArray[np.float64], band: NDArray[np.intp], ends: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """Return k with E_band(k) = energy inside each bracket: Newton's steps, halving where one leaves the bracket."""
-    k = (low + high) / 2
-    if not len(k):
-        return k
+    """Return k with E_band(k) = energy inside each bracket.
+
+    The first guess is where the cubic through the ends has the energy; then Newton's steps, halving where one leaves
+    the bracket, until the next step cannot matter.
+    """
+    k = _cubic_roots(energies, ends)
+    low, high, rising = ends[0].copy(), ends[3].copy(), ends[4] > ends[1]
+    least = 4 * np.finfo(np.float64).eps * (1.0 + float(np.abs(energies).max(initial=0.0)))
     open_ = np.arange(len(k))
-    scale = 4 * np.finfo(np.float64).eps * (1.0 + float(np.abs(energies).max(initial=0.0)))
-    rising = _values(model, high, band)[0] > _values(model, low, band)[0]
-    low, high = low.copy(), high.copy()
     for _ in range(60):
         if not len(open_):
             break
@@ -289,11 +326,32 @@ def _roots(
         low[open_] = np.where(is_past, low[open_], at)
         next_k = at - np.divide(miss, slope, out=np.full_like(miss, np.inf), where=slope != 0)
         inside = (next_k >= low[open_]) & (next_k <= high[open_])
-        next_k = np.where(inside, next_k, (low[open_] + high[open_]) / 2)
-        done = (np.abs(miss) <= scale) | (np.abs(next_k - at) < 1e-15)
-        k[open_] = np.where(np.abs(miss) == 0, at, next_k)
-        open_ = open_[~done]
+        k[open_] = np.where(inside, next_k, (low[open_] + high[open_]) / 2)
+        step = np.abs(k[open_] - at)
+        bend = np.abs(ends[5] - ends[2])[open_] / (ends[3] - ends[0])[open_] + np.abs(slope)
+        done = inside & ((step < CLOSE) | (10 * bend * step**2 < CLOSE * np.abs(slope)))
+        k[open_] = np.where(np.abs(miss) <= least, np.where(inside, k[open_], at), k[open_])
+        open_ = open_[~(done | (np.abs(miss) <= least))]
     return k
+
+
+def _cubic_roots(energies: NDArray[np.float64], ends: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return where the cubic through both ends of each bracket has the energy, by halving."""
+    k, energy, slope, k_two, energy_two, slope_two = ends
+    step = k_two - k
+    rising = energy_two > energy
+    low, high = np.zeros_like(k), np.ones_like(k)
+    for _ in range(50):
+        t = (low + high) / 2
+        value = (
+            energy * (1 + 2 * t) * (1 - t) ** 2
+            + energy_two * t**2 * (3 - 2 * t)
+            + step * t * (1 - t) * (slope * (1 - t) - slope_two * t)
+        )
+        is_past = (value > energies) == rising
+        low, high = np.where(is_past, low, t), np.where(is_past, t, high)
+    guess: NDArray[np.float64] = k + step * (low + high) / 2
+    return guess
 
 
 def _values(
