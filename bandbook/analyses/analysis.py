@@ -1,0 +1,69 @@
+"""What a question is, and what it is handed."""
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from bandbook.exhibits import KINDS, Figure, Quantity, QuantityName, Table, in_beta
+from bandbook.model import Model
+from bandbook.parameters import Field, Problem
+
+
+@dataclass(frozen=True)
+class Asked:
+    """A question put to a model.
+
+    Attributes:
+        name: The study's name.
+        study: Its checked parameters.
+        model: The model.
+    """
+
+    name: str
+    study: Mapping[str, Any]
+    model: Model
+
+    def quantity(self, name: str, kind: str, value: float | None, meaning: str, **more: Any) -> Quantity:
+        """Return a quantity of this study, in β too where the model has one.
+
+        Args:
+            name: Its name without the study.
+            kind: Its kind.
+            value: In the kind's unit, or ``None``.
+            meaning: One line.
+            more: ``electrons`` that a total counts, ``unit`` other than the kind's.
+        """
+        electrons = more.get("electrons", 0.0)
+        beta = in_beta(value, kind, beta=self.model.beta_unit, alpha=self.model.alpha_unit, electrons=electrons)
+        return Quantity(f"{self.name}.{name}", kind, value, more.get("unit", KINDS[kind].unit), meaning, beta)
+
+
+@dataclass(frozen=True)
+class Analysis:
+    """One question.
+
+    Attributes:
+        question: Its word.
+        meaning: What it asks, one line without a full stop.
+        example: A study block.
+        fields: Its keys besides ``question``, ``name`` and ``system``.
+        quantities: What it promises.
+        inspect: What the fields cannot see: ``(study, model or None) → problems``.
+        compute: The numbers, as an object of its own.
+        report: Its quantities.
+        tabulate: Its tables.
+        draw: Its figures.
+        warn: Its warnings, whole sentences.
+    """
+
+    question: str
+    meaning: str
+    example: str
+    fields: tuple[Field, ...]
+    quantities: tuple[QuantityName, ...]
+    inspect: Callable[[Mapping[str, Any], Model | None], list[Problem]]
+    compute: Callable[[Asked], Any]
+    report: Callable[[Asked, Any], tuple[Quantity, ...]]
+    tabulate: Callable[[Asked, Any], tuple[Table, ...]]
+    draw: Callable[[Asked, Any], tuple[Figure, ...]]
+    warn: Callable[[Asked, Any], tuple[str, ...]]
