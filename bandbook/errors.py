@@ -66,9 +66,14 @@ def key_text(key: Iterable[str | int]) -> str:
 
 
 class BandbookError(Exception):
-    """The root of every error that the book raises itself."""
+    """The root of every error that the book raises itself.
+
+    Attributes:
+        step: Number of the notebook step in which it arose, from 1; 0 outside a run.
+    """
 
     exit_status = 1
+    step = 0
 
 
 class WorkingsError(BandbookError):

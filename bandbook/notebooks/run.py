@@ -40,13 +40,13 @@ def run_notebook(notebook: Any, *, timeout: float) -> Any:
         WorkingsError: An author's code cell failed.
         PhysicsError: A question makes no sense for its model.
         AuthorError: A function of the workings built no model, or a study names what the model lacks.
-        RunError: The run timed out, or the kernel died. Every error carries the notebook as far as it ran.
+        RunError: The run timed out, or the kernel died. Every error carries the number of its step.
     """
     try:
         with fresh_kernel() as (manager, place):
             return _execute(notebook, manager, timeout=timeout, place=place)
     except BandbookError as error:
-        error.notebook = notebook  # type: ignore[attr-defined]
+        error.step = _failing_step(notebook)
         raise
 
 
@@ -107,6 +107,14 @@ def _error_of(cell: Any) -> Any:
     if cell.cell_type != "code":
         return None
     return next((output for output in cell.outputs if output.output_type == "error"), None)
+
+
+def _failing_step(notebook: Any) -> int:
+    """Return the number of the step that failed or was running last, from 1; 0 before the first."""
+    steps = [cell for cell in notebook.cells if cell.id.startswith("step-")]
+    failing = next((number for number, cell in enumerate(steps, start=1) if _error_of(cell)), 0)
+    started = sum(bool(cell.execution_count or cell.outputs) for cell in steps)
+    return failing or min(started + 1, len(steps))
 
 
 def _number(notebook: Any, failing: Any) -> int:

@@ -60,12 +60,22 @@ def bloch_states(model: Model, k: NDArray[np.float64]) -> BlochStates:
     >>> bloch_states(chain, np.array([0.0, 0.25, 1.0])).energy.round(6)[:, 0].tolist()
     [-2.0, -1.414214, 2.0]
     """
-    size = max(1, BATCH // model.n_sites**2)
-    parts = [_states(model, k[start : start + size]) for start in range(0, max(1, len(k)), size)]
+    parts = [_states(model, k[part]) for part in batches(model, len(k))]
     if len(parts) == 1:
         return parts[0]
     names = ("k", "energy", "slope_before", "slope_after", "vectors")
     return BlochStates(*(np.concatenate([getattr(part, name) for part in parts]) for name in names))
+
+
+def batches(model: Model, n_k: int) -> list[slice]:
+    """Return slices of so many k that their matrices fit in memory together.
+
+    >>> from bandbook.model import Model, Site
+    >>> len(batches(Model((Site("A"),), ()), 3_000_000))
+    2
+    """
+    size = max(1, BATCH // model.n_sites**2)
+    return [slice(start, min(start + size, n_k)) for start in range(0, max(1, n_k), size)]
 
 
 def _states(model: Model, k: NDArray[np.float64]) -> BlochStates:

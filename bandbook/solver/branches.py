@@ -14,8 +14,9 @@ from numpy.typing import NDArray
 
 from bandbook.errors import PhysicsError
 from bandbook.model import Model
-from bandbook.solver.bloch_states import BlochStates, bloch_states
+from bandbook.solver.bloch_states import BlochStates, batches, bloch_states
 from bandbook.solver.canonical import tolerance
+from bandbook.solver.hamiltonian import band_states, bloch_derivative
 
 #: Intervals of the first mesh.
 FIRST_MESH: Final = 64
@@ -165,9 +166,7 @@ def _with_extremes(model: Model, mesh: BlochStates) -> BlochStates:
     return mesh.joined(bloch_states(model, _apart(found, mesh.k)))[0]
 
 
-def _turns(
-    model: Model, mesh: BlochStates, left: NDArray[np.intp], band: NDArray[np.intp]
-) -> NDArray[np.float64]:
+def _turns(model: Model, mesh: BlochStates, left: NDArray[np.intp], band: NDArray[np.intp]) -> NDArray[np.float64]:
     """Return k of the extreme or kink in each interval, where the band's slopes at the two ends differ in sign.
 
     In turn: where the tangents at the ends meet (exact for a kink) and where the slope's secant is zero (fast for a
@@ -357,6 +356,14 @@ def _cubic_roots(energies: NDArray[np.float64], ends: NDArray[np.float64]) -> ND
 def _values(
     model: Model, k: NDArray[np.float64], band: NDArray[np.intp]
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    states = bloch_states(model, k)
-    each = np.arange(len(k))
-    return states.energy[each, band], states.slope_after[each, band]
+    """Return energy and slope of one band at each k, eV and eV per π/a."""
+    energy, slope = np.empty(len(k)), np.empty(len(k))
+    for part in batches(model, len(k)):
+        levels, vectors = band_states(model, k[part, None])
+        each = np.arange(len(levels))
+        energy[part], u = levels[each, band[part]], vectors[each, :, band[part]]
+        dH, dS = bloch_derivative(model, k[part, None], 0)
+        slope[part] = np.einsum("ks,kst,kt->k", u.conj(), dH, u, optimize=True).real
+        if dS is not None:
+            slope[part] -= energy[part] * np.einsum("ks,kst,kt->k", u.conj(), dS, u, optimize=True).real
+    return energy, np.pi * slope

@@ -15,8 +15,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from bandbook.model import Model
-from bandbook.solver.bloch_states import BlochStates, bloch_states
+from bandbook.solver.bloch_states import batches
 from bandbook.solver.branches import Branches, Solution, branches_of, solve_for_k
+from bandbook.solver.hamiltonian import band_states
 from bandbook.solver.labels import extended_k
 from bandbook.solver.levels import Levels
 from bandbook.solver.piece import Piece
@@ -82,6 +83,9 @@ class Candidate:
     is_edge: bool
     W: float = 0.0
     d: int = 1
+
+
+States = tuple[Candidate, NDArray[np.complex128]]
 
 
 @dataclass(frozen=True)
@@ -158,9 +162,7 @@ def _outside(ranges: NDArray[np.float64], energies: NDArray[np.float64], near: f
     return outside
 
 
-def _chosen(
-    crystal: Branches, energies: NDArray[np.float64]
-) -> dict[int, tuple[tuple[Candidate, NDArray[np.complex128]], ...]]:
+def _chosen(crystal: Branches, energies: NDArray[np.float64]) -> dict[int, tuple[States, ...]]:
     """Return, for each energy, its candidates with the vectors u of their bands, ``(site of the cell, band)``."""
     found: list[tuple[int, list[Solution]]] = []
     for row, solutions in groupby(solve_for_k(crystal, energies), key=lambda solution: solution.row):
@@ -168,11 +170,13 @@ def _chosen(
     if not found:
         return {}
     k = np.array([next((s.k for s in cluster if s.is_edge), cluster[0].k) for _, cluster in found])
-    states = bloch_states(crystal.model, k)
-    chosen: dict[int, list[tuple[Candidate, NDArray[np.complex128]]]] = {}
-    for index, (row, cluster) in enumerate(found):
-        candidate = _candidate(crystal, states, cluster, index=index, energy=float(energies[row]))
-        chosen.setdefault(row, []).append((candidate, states.vectors[index][:, list(candidate.bands)]))
+    chosen: dict[int, list[States]] = {}
+    for part in batches(crystal.model, len(k)):
+        energy, vectors = band_states(crystal.model, k[part, None])
+        for index, (row, cluster) in enumerate(found[part]):
+            bands = _bands(crystal, energy[index], cluster, energy=float(energies[row]))
+            candidate = Candidate(float(k[part][index]), bands, any(solution.is_edge for solution in cluster))
+            chosen.setdefault(row, []).append((candidate, vectors[index][:, list(bands)]))
     return {row: _without_doubles(pairs) for row, pairs in chosen.items()}
 
 
@@ -186,19 +190,14 @@ def _clusters(solutions: list[Solution]) -> list[list[Solution]]:
     return clusters
 
 
-def _candidate(
-    crystal: Branches, states: BlochStates, cluster: list[Solution], *, index: int, energy: float
-) -> Candidate:
-    is_edge = any(solution.is_edge for solution in cluster)
-    near = crystal.near_edge * (1.001 if is_edge else 0.1)
-    at = np.flatnonzero(np.abs(states.energy[index] - energy) <= near)
-    bands = {int(band) for band in at} | {solution.band for solution in cluster}
-    return Candidate(float(states.k[index]), tuple(sorted(bands)), is_edge)
+def _bands(crystal: Branches, at_k: NDArray[np.float64], cluster: list[Solution], *, energy: float) -> tuple[int, ...]:
+    """Return the bands that have the energy at the k of a cluster of solutions."""
+    near = crystal.near_edge * (1.001 if any(solution.is_edge for solution in cluster) else 0.1)
+    bands = {int(band) for band in np.flatnonzero(np.abs(at_k - energy) <= near)}
+    return tuple(sorted(bands | {solution.band for solution in cluster}))
 
 
-def _without_doubles(
-    pairs: list[tuple[Candidate, NDArray[np.complex128]]],
-) -> tuple[tuple[Candidate, NDArray[np.complex128]], ...]:
+def _without_doubles(pairs: list[States]) -> tuple[States, ...]:
     """Leave out roots close to an edge whose states the edge already counts."""
     edges = [candidate for candidate, _ in pairs if candidate.is_edge]
 
@@ -210,9 +209,7 @@ def _without_doubles(
     return tuple(pair for pair in pairs if not is_double(pair[0]))
 
 
-def _marks(
-    piece: Piece, vectors: NDArray[np.float64], pairs: Sequence[tuple[Candidate, NDArray[np.complex128]]]
-) -> list[Mark]:
+def _marks(piece: Piece, vectors: NDArray[np.float64], pairs: Sequence[States]) -> list[Mark]:
     """Return the marks of one group: candidates in falling W, then rising k, until the group is full."""
     size = vectors.shape[1]
     weighed = [_weighed(piece, vectors, candidate, u=u) for candidate, u in pairs]

@@ -66,7 +66,7 @@ class Piece:
         """Number of lattice vectors of its crystal; 0 for a molecule."""
         return len(self.n_cells)
 
-    @property
+    @cached_property
     def has_overlap(self) -> bool:
         """Whether any bond carries an overlap."""
         return bool(np.any(self.overlap) or np.any(self.norm != 1))

@@ -1,0 +1,43 @@
+"""Where templates lie and how they are filled: everything is escaped unless a section says it is HTML."""
+
+from collections.abc import Mapping
+from functools import lru_cache
+from pathlib import Path
+from typing import Any
+
+import bandbook
+from bandbook.exhibits import KINDS, typeset
+
+
+def package_templates() -> Path:
+    """Return the package's own templates: in a checkout beside the package, in a wheel inside it."""
+    package = Path(bandbook.__file__).resolve().parent
+    inside = package / "_site"
+    return inside if inside.is_dir() else package.parent / "site_templates"
+
+
+@lru_cache(maxsize=4)
+def _environment(override: Path | None) -> Any:
+    from jinja2 import Environment, FileSystemLoader, StrictUndefined
+
+    folders = [*([override] if override else []), package_templates()]
+    environment = Environment(
+        loader=FileSystemLoader([str(folder) for folder in folders]),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    environment.filters["typeset"] = _typeset
+    return environment
+
+
+def _typeset(row: Mapping[str, Any], key: str = "value") -> str:
+    """Return a quantity's number as pages show it."""
+    return typeset(row[key], KINDS[row["kind"]].shown, row.get("uncertainty"))
+
+
+def render(name: str, facts: Mapping[str, Any], *, override: Path | None = None) -> str:
+    """Return a template filled with facts, without blank lines, so that Markdown leaves it alone."""
+    text = _environment(override).get_template(name).render(**facts)
+    return str(text).strip()

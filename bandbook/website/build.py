@@ -1,0 +1,42 @@
+"""Build the site of a book from its page tree, as the command does."""
+
+import logging
+from pathlib import Path
+from typing import Any
+
+from bandbook.errors import AuthorError, Problem
+from bandbook.settings import Settings
+
+
+def build_site(settings: Settings, tree: Path, *, site_dir: Path | None = None) -> Path:
+    """Build the web pages from a page tree that is written already.
+
+    Args:
+        settings: The book.
+        tree: Its page tree.
+        site_dir: Where the pages go, instead of the book's ``site_dir``.
+
+    Returns:
+        The folder of the site.
+
+    Raises:
+        AuthorError: mkdocs.yml is wrong, or MkDocs refuses the pages.
+    """
+    from mkdocs.commands.build import build
+    from mkdocs.config import load_config
+    from mkdocs.exceptions import Abort, MkDocsException
+
+    logging.getLogger("mkdocs").setLevel(logging.WARNING)
+    overrides: dict[str, Any] = {"site_dir": str(site_dir)} if site_dir else {}
+    try:
+        config = load_config(str(settings.config_file), **overrides)
+        plugin: Any = config.plugins["bandbook"]
+        plugin.tree = tree
+        config.plugins.on_startup(command="build", dirty=False)
+        build(config)
+        config.plugins.on_shutdown()
+    except (MkDocsException, Abort, KeyError) as error:
+        found = f"the pages could not be built: {error}"
+        problem = Problem(found, "MkDocs reads mkdocs.yml", "correct it").at(settings.config_file.name, 1)
+        raise AuthorError([problem]) from error
+    return Path(config.site_dir)
