@@ -189,7 +189,8 @@ def _turns(model: Model, mesh: BlochStates, left: NDArray[np.intp], band: NDArra
         is_before = (here[2] > 0) == (low[2, open_] > 0)
         low[:, open_[is_before]] = here[:, is_before]
         high[:, open_[~is_before]] = here[:, ~is_before]
-    return found
+    turns: NDArray[np.float64] = found
+    return turns
 
 
 def _guess(one: NDArray[np.float64], two: NDArray[np.float64], way: int) -> NDArray[np.float64]:

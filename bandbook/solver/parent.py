@@ -21,6 +21,7 @@ from bandbook.solver.hamiltonian import band_states
 from bandbook.solver.labels import extended_k
 from bandbook.solver.levels import Levels
 from bandbook.solver.piece import Piece
+from bandbook.solver.ranges import outside_bands
 
 #: Singular values below this part of the largest are no direction of their own.
 RANK: Final = 1e-6
@@ -51,7 +52,8 @@ class Places:
         band: Number of the sorted band, from 0; ``None`` without k.
         extended_k: k in the extended zone, π/a, 0 to the number of bands; ``None`` without k or unbranched backbone.
         is_gap_level: Whether the level lies outside every band, ``(state,)``.
-        place: Of a gap level: ``"left end"``, ``"right end"``, ``"both ends"`` or ``"inside"``; otherwise ``None``.
+        place: Of a gap level: ``"left end"``, ``"right end"``, ``"both ends"`` or ``"inside"``; ``None`` for others
+            and in 2D and 3D.
         reason: Why k or W is missing; empty when both are there.
     """
 
@@ -117,11 +119,13 @@ def place_on_bands(model: Model, piece: Piece, levels: Levels) -> Places:
     >>> [round(k, 12) for k in places.k], [round(W, 12) for W in places.W]
     ([0.2, 0.4, 0.6, 0.8], [1.0, 1.0, 1.0, 1.0])
     """
-    if model.dimension != 1:
-        return _unplaced(levels, reason=NO_PARENT if not model.dimension else NOT_1D)
-    crystal = branches_of(model)
     energies = np.array([levels.energy[part.start] for part in levels.groups])
-    is_gap = _outside(crystal.ranges, energies, crystal.near_edge)
+    if model.dimension == 0:
+        return _without_k(levels, is_gap=np.zeros(len(levels.energy), dtype=np.bool_), reason=NO_PARENT)
+    is_gap = outside_bands(model, energies)
+    if model.dimension > 1:
+        return _without_k(levels, is_gap=is_gap[levels.group], reason=NOT_1D)
+    crystal = branches_of(model)
     chosen = _chosen(crystal, energies)
     marks: list[Mark] = []
     places: list[str | None] = []
@@ -149,17 +153,11 @@ def _places(model: Model, marks: Sequence[Mark], *, places: Sequence[str | None]
     )
 
 
-def _unplaced(levels: Levels, *, reason: str) -> Places:
+def _without_k(levels: Levels, *, is_gap: NDArray[np.bool_], reason: str) -> Places:
     n = len(levels.energy)
     nothing = (None,) * n
-    return Places(nothing, nothing, nothing, nothing, np.zeros(n, dtype=np.bool_), nothing, (reason,) * n)
-
-
-def _outside(ranges: NDArray[np.float64], energies: NDArray[np.float64], near: float) -> NDArray[np.bool_]:
-    below = energies[:, None] < ranges[:, 0] - near
-    above = energies[:, None] > ranges[:, 1] + near
-    outside: NDArray[np.bool_] = np.all(below | above, axis=1)
-    return outside
+    reasons = tuple(GAP_LEVEL if flag else reason for flag in is_gap)
+    return Places(nothing, nothing, nothing, nothing, is_gap, nothing, reasons)
 
 
 def _chosen(crystal: Branches, energies: NDArray[np.float64]) -> dict[int, tuple[States, ...]]:

@@ -17,12 +17,14 @@ def turned(vectors: NDArray[np.float64], seed: int) -> NDArray[np.float64]:
     """Return the columns in a random orthogonal basis of their space, with noise in the last bits."""
     rng = np.random.default_rng(seed)
     rotation = np.linalg.qr(rng.standard_normal((vectors.shape[1],) * 2))[0]
-    return vectors @ rotation * (1 + 1e-15 * rng.standard_normal(vectors.shape))
+    noisy: NDArray[np.float64] = vectors @ rotation * (1 + 1e-15 * rng.standard_normal(vectors.shape))
+    return noisy
 
 
 def ring_pair(n: int, m: int) -> NDArray[np.float64]:
     angle = 2 * np.pi * m * np.arange(n) / n
-    return np.stack([np.cos(angle), np.sin(angle)], axis=1) * np.sqrt(2 / n)
+    pair: NDArray[np.float64] = np.stack([np.cos(angle), np.sin(angle)], axis=1) * np.sqrt(2 / n)
+    return pair
 
 
 @settings(max_examples=60, deadline=None)

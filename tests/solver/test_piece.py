@@ -142,8 +142,7 @@ def test_a_ring_with_far_bonds_and_overlap_is_the_crystal_too(
 ) -> None:
     places = [(0, 1, (0,)), (1, 0, (1,)), (0, 0, (2,)), (1, 1, (1,))]
     bonds = tuple(
-        Coupling(a, b, beta, cell, overlap=s)
-        for (a, b, cell), beta, s in zip(places, betas, overlaps, strict=True)
+        Coupling(a, b, beta, cell, overlap=s) for (a, b, cell), beta, s in zip(places, betas, overlaps, strict=True)
     )
     model = Model((Site("A"), Site("B", alpha=0.4)), bonds, dimension=1)
     H, S = cut_piece(model, cells=n, ends="ring").matrices()
@@ -159,7 +158,9 @@ def test_sparse_and_dense_matrices_agree() -> None:
 
 
 def test_the_path_of_a_chain_is_found_from_either_kind_of_order() -> None:
-    model = Model(tuple(Site(name) for name in "ABCD"), (Coupling(2, 0, -1.0), Coupling(0, 3, -2.0), Coupling(3, 1, -3.0)))
+    model = Model(
+        tuple(Site(name) for name in "ABCD"), (Coupling(2, 0, -1.0), Coupling(0, 3, -2.0), Coupling(3, 1, -3.0))
+    )
     piece = cut_piece(model)
     assert piece.path is not None
     assert piece.path.tolist() == [1, 3, 0, 2]
