@@ -23,6 +23,8 @@ if TYPE_CHECKING:
 MOST_LEVELS: Final = 400
 #: Times a shift is moved when a factorisation fails at it.
 TRIALS: Final = 8
+#: Levels by which a window may begin or end too far out.
+SLACK: Final = 24
 #: Part of the spectrum's width by which a shift is moved then.
 NUDGE: Final = 1.37e-9
 
@@ -89,8 +91,9 @@ def window_levels(piece: Piece, *, first: int, last: int) -> tuple[NDArray[np.fl
     _check_overlap(S)
     bounds = spectrum_bounds(piece)
     spectrum = Spectrum(H, S, piece.n_sites, *bounds)
-    low, n_low = spectrum.shift(first, side=-1)
-    high, n_high = spectrum.shift(last, side=1)
+    known = [(bounds[0], 0), (bounds[1], piece.n_sites)]
+    low, n_low = spectrum.shift(first, known, side=-1)
+    high, n_high = spectrum.shift(last, known, side=1)
     wanted = n_high - n_low
     if wanted > MOST_LEVELS:
         raise PhysicsError(
@@ -140,25 +143,26 @@ class Spectrum:
             "take fewer cells"
         )
 
-    def shift(self, wanted: int, *, side: int) -> tuple[float, int]:
+    def shift(self, wanted: int, known: list[tuple[float, int]], *, side: int) -> tuple[float, int]:
         """Return an energy with about ``wanted`` levels below it, and that number.
 
         With ``side`` −1 it is at most ``wanted``, with +1 at least, and no more than a few off unless levels coincide.
+        Counts made on the way are added to ``known``, which starts with the bounds of the spectrum.
         """
-        if wanted in {0, self.size}:
-            return (self.bottom, 0) if wanted == 0 else (self.top, self.size)
-        low, high, n_low, n_high = self.bottom, self.top, 0, self.size
-        slack = 24
-        while high - low > self.near:
-            middle = low + 0.49 * (high - low)
-            _, count, middle = self.factor(middle)
-            if 0 <= side * (count - wanted) <= slack:
-                return middle, count
-            if count < wanted or (count == wanted and side < 0):
-                low, n_low = middle, count
-            else:
-                high, n_high = middle, count
-        return (low, n_low) if side < 0 else (high, n_high)
+        least, most = sorted((wanted, wanted + side * SLACK))
+        halve = True
+        while True:
+            fitting = [pair for pair in known if least <= pair[1] <= most]
+            if fitting:
+                return min(fitting, key=lambda pair: abs(pair[1] - wanted))
+            low, n_low = max(pair for pair in known if pair[1] < least)
+            high, n_high = min(pair for pair in known if pair[1] > most)
+            if high - low <= self.near:
+                return (low, n_low) if side < 0 else (high, n_high)
+            halve = not halve
+            share = ((least + most) / 2 - n_low) / (n_high - n_low)
+            _, count, middle = self.factor(low + (0.49 if halve else min(max(share, 0.02), 0.98)) * (high - low))
+            known.append((middle, count))
 
 
 def _unit(size: int) -> "csr_array":
