@@ -3,7 +3,8 @@
 The map, from the bottom up:
 
 * ``errors``, ``parameters``, ``exhibits``: shared by both sides.
-* kernel side, what a notebook cell runs: ``model``, ``lattices``, ``systems``, ``solver``, ``analyses``, ``registry``, ``cells``.
+* kernel side, what a notebook cell runs: ``model``, ``lattices``, ``systems``, ``solver``, ``analyses``, ``registry``,
+  ``cells``.
 * host side, what keeps the book: ``cases``, ``notebooks``, ``store``, ``records``, ``pages``, ``workflow``.
 * doors: ``website`` (a MkDocs plugin) and ``cli`` (the command ``bandbook``).
 

@@ -17,7 +17,12 @@ from bandbook.model import Model
 from bandbook.parameters import NAME
 
 Scope = tuple[
-    Mapping[str, Model], dict[str, Answer], Mapping[str, str], np.random.Generator, Callable[..., None], Callable[..., None]
+    Mapping[str, Model],
+    dict[str, Answer],
+    Mapping[str, str],
+    np.random.Generator,
+    Callable[..., None],
+    Callable[..., None],
 ]
 
 
@@ -74,7 +79,9 @@ def report(name: str, value: float | None, unit: str = "", meaning: str = "") ->
         AuthorError: The name or the value is not allowed.
     """
     if not NAME.match(name):
-        raise AuthorError([Problem(f"report was given the name {name!r}", "letters, digits and _, a letter first", "rename it")])
+        raise AuthorError(
+            [Problem(f"report was given the name {name!r}", "letters, digits and _, a letter first", "rename it")]
+        )
     number = None if value is None else float(value)
     if number is not None and not math.isfinite(number):
         raise AuthorError([Problem(f"report was given {number} for {name}", "a finite number, or None", "correct it")])
@@ -100,7 +107,7 @@ def _shell() -> Any:
         from IPython.core.getipython import get_ipython
     except ImportError:
         return None
-    return get_ipython()  # type: ignore[no-untyped-call]
+    return get_ipython()
 
 
 def _display(answer: Answer) -> None:

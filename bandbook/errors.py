@@ -27,7 +27,7 @@ class Problem:
         found: What was found, as a clause without a full stop.
         allowed: What is allowed there.
         remedy: What to do.
-        key: The place inside a block, from the top-level key down, such as ``("sites", 2, "alpha")``; rows count from 0.
+        key: The place inside a block, from the top-level key down: ``("sites", 2, "alpha")``; rows count from 0.
         file: The file, relative to the book; empty until the problem is placed.
         line: The line in the file, from 1; 0 until the problem is placed.
     """

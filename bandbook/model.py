@@ -61,7 +61,7 @@ class Model:
         electrons: Electrons of the cell, or of the molecule.
         beta_unit: The β that energies are also reported in, eV, or ``None``.
         alpha_unit: The α from which x = (E − α)/β counts, eV.
-        points: Named points of the zone, in fractions of the reciprocal vectors; ``()`` for the usual ones of the dimension.
+        points: Named points of the zone, π/a along each vector; ``()`` for the usual ones.
     """
 
     sites: tuple[Site, ...]

@@ -74,7 +74,8 @@ class Record:
     def summary(self) -> str:
         """The key quantities in one line."""
         return ", ".join(
-            f"{q['name']} {typeset(q['value'], KINDS[q['kind']].shown)} {q['unit']}".rstrip() for q in self.key_quantities
+            f"{q['name']} {typeset(q['value'], KINDS[q['kind']].shown)} {q['unit']}".rstrip()
+            for q in self.key_quantities
         )
 
     def as_dict(self) -> dict[str, Any]:

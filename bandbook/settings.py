@@ -9,7 +9,9 @@ from bandbook.errors import AuthorError, Problem
 from bandbook.parameters import Field, check
 
 #: What may stand under ``plugins: - bandbook:`` in mkdocs.yml.
-OPTIONS: Final = (Field("timeout", "number", "longest time of one notebook cell, in seconds", default=600.0, above=0.0),)
+OPTIONS: Final = (
+    Field("timeout", "number", "longest time of one notebook cell, in seconds", default=600.0, above=0.0),
+)
 
 
 @dataclass(frozen=True)

@@ -157,6 +157,7 @@ def _outcome(
         except BandbookError as error:
             return Outcome(checked, "failed", failure=_kept(checked, shelf, error, key))
         status = "executed"
+    assert result is not None  # noqa: S101 - fetched or just put
     shelf.remember(checked.case.id, key)
     shelf.forget_failure(checked.case.id)
     return Outcome(checked, status, result, records.make_record(checked, result, book))

@@ -33,7 +33,7 @@ def report(asked: Asked, result: Bands) -> tuple[Quantity, ...]:
     electrons = asked.model.n_electrons
     fixed = (
         asked.quantity("gap", "difference", result.gap, "smallest gap in the whole zone"),
-        asked.quantity("direct_gap", "difference", result.direct_gap, "smallest vertical distance of the bands at the gap"),
+        asked.quantity("direct_gap", "difference", result.direct_gap, "smallest vertical distance at the gap"),
         asked.quantity("total_width", "difference", result.total_width, "lowest to highest energy, gaps included"),
         asked.quantity("fermi_energy", "level", result.fermi_energy, "Fermi energy, mid-gap in an insulator"),
         asked.quantity("valence_top", "level", valence.energy if valence else None, "highest filled state"),
@@ -42,8 +42,8 @@ def report(asked: Asked, result: Bands) -> tuple[Quantity, ...]:
             "energy_per_cell", "total", result.energy_per_cell, "energy of the occupied states, both spins",
             electrons=electrons,
         ),
-        asked.quantity("mass_hole", "mass", result.mass_hole.mean, "effective mass at the top of the valence band"),
-        asked.quantity("mass_electron", "mass", result.mass_electron.mean, "effective mass at the bottom of the conduction band"),
+        asked.quantity("mass_hole", "mass", result.mass_hole.mean, "effective mass, valence top"),
+        asked.quantity("mass_electron", "mass", result.mass_electron.mean, "effective mass, conduction bottom"),
     )  # fmt: skip
     points = tuple(
         asked.quantity(f"energy_{name}_{number}", "level", float(energy), f"band {number} at {GREEK.get(name, name)}")
@@ -57,10 +57,20 @@ def tabulate(asked: Asked, result: Bands) -> tuple[Table, ...]:
     """Return where the edges are, and the energies on the path."""
     dimension = asked.model.dimension
     k_heads = tuple(
-        Column(f"k{axis + 1}" if dimension > 1 else "k", f"k{'₁₂₃'[axis]}" if dimension > 1 else "k", "k along a lattice vector", "π/a", 6, 4)
+        Column(
+            f"k{axis + 1}" if dimension > 1 else "k",
+            f"k{'₁₂₃'[axis]}" if dimension > 1 else "k",
+            "k along a lattice vector",
+            "π/a",
+            6,
+            4,
+        )
         for axis in range(dimension)
     )
-    edges = (("valence top", result.valence, result.mass_hole), ("conduction bottom", result.conduction, result.mass_electron))
+    edges = (
+        ("valence top", result.valence, result.mass_hole),
+        ("conduction bottom", result.conduction, result.mass_electron),
+    )
     rows = tuple(_edge_row(name, extreme, mass) for name, extreme, mass in edges if extreme is not None)
     heads = (
         Column("edge", "edge", "which edge"),
@@ -129,7 +139,9 @@ def warn(asked: Asked, result: Bands) -> tuple[str, ...]:
     if result.kind != "insulator":
         warnings.append(f"The gap is 0: {result.kind}. There is no effective mass.")
     if result.energy_per_cell is None:
-        warnings.append("The energy per cell is left out: its mean over the zone does not settle to the decimals that are kept.")
+        warnings.append(
+            "The energy per cell is left out: its mean over the zone does not settle to the decimals that are kept."
+        )
     if asked.model.dimension > 1 and result.kind in {"bands cross or overlap", "band partly filled"}:
         warnings.append("The Fermi energy comes from counting states on a mesh and is good to a few meV only.")
     return tuple(warnings)

@@ -55,7 +55,9 @@ def compute(asked: Asked) -> SeriesResult:
     values = series.extended_gap if uses_extended else series.gap
     fitted = np.isfinite(values) & ~series.is_open_shell
     fits = tuple(
-        fit_series(form, series.n_cells[fitted].astype(float), values[fitted], oscillators=study["oscillators_per_cell"])
+        fit_series(
+            form, series.n_cells[fitted].astype(float), values[fitted], oscillators=study["oscillators_per_cell"]
+        )
         for form in study["fits"]
     )
     return SeriesResult(series, fits, uses_extended, fitted)
@@ -104,7 +106,9 @@ def tabulate(asked: Asked, result: SeriesResult) -> tuple[Table, ...]:
     flags = zip(series.is_open_shell, result.fitted, strict=True)
     rows = tuple(
         (int(n), int(sites), int(electrons), _known(gap), _known(extended), bool(is_open), bool(is_fitted))
-        for (n, sites, electrons, gap, extended), (is_open, is_fitted) in zip(zip(*columns, strict=True), flags, strict=True)
+        for (n, sites, electrons, gap, extended), (is_open, is_fitted) in zip(
+            zip(*columns, strict=True), flags, strict=True
+        )
     )
     tables = [Table("gaps", "Gap against length.", heads, rows)]
     if result.fits:
@@ -173,13 +177,28 @@ def _panel(axes: Any, result: SeriesResult, *, oscillators: int, is_inverse: boo
         place, series.gap, "s" if result.uses_extended else "o", color=pen.SERIES[1 if result.uses_extended else 0],
         markerfacecolor=pen.PAPER, markersize=4.5, label="gap",
     )  # fmt: skip
-    n = 1.0 / np.linspace(1e-4, 1.0 / series.n_cells[0], 300) if is_inverse else np.linspace(series.n_cells[0], series.n_cells[-1], 300)
+    n = (
+        1.0 / np.linspace(1e-4, 1.0 / series.n_cells[0], 300)
+        if is_inverse
+        else np.linspace(series.n_cells[0], series.n_cells[-1], 300)
+    )
     for number, fit in enumerate(result.fits):
         if fit.limit is not None:
-            style = {"color": pen.SERIES[(number + 2) % len(pen.SERIES)], "linestyle": pen.DASHES[number % len(pen.DASHES)]}
-            axes.plot(1.0 / n if is_inverse else n, fit.curve(n, oscillators=oscillators), linewidth=1.1, label=fit.form, **style)
+            style = {
+                "color": pen.SERIES[(number + 2) % len(pen.SERIES)],
+                "linestyle": pen.DASHES[number % len(pen.DASHES)],
+            }
+            axes.plot(
+                1.0 / n if is_inverse else n,
+                fit.curve(n, oscillators=oscillators),
+                linewidth=1.1,
+                label=fit.form,
+                **style,
+            )
     limit = f"limit {typeset(series.band_gap, 3)}"
-    pen.rule(axes, series.band_gap, limit, style="--") if not is_inverse else axes.axhline(series.band_gap, color=pen.QUIET, linestyle="--", linewidth=1.0)
+    pen.rule(axes, series.band_gap, limit, style="--") if not is_inverse else axes.axhline(
+        series.band_gap, color=pen.QUIET, linestyle="--", linewidth=1.0
+    )
     axes.set_xlabel("1/N (N in cells)" if is_inverse else "N / cells")
     axes.set_ylim(bottom=min(0.0, float(np.nanmin(series.gap)) if np.isfinite(series.gap).any() else 0.0))
 
@@ -191,7 +210,11 @@ def warn(asked: Asked, result: SeriesResult) -> tuple[str, ...]:
     for fit in result.fits:
         miss = None if fit.limit is None else abs(fit.limit - series.band_gap)
         if miss is not None and miss > (fit.window_error or 0.0) + 1e-5:
-            error = f"its window error is {typeset(fit.window_error, 3)} eV" if fit.window_error is not None else "it has no window error"
+            error = (
+                f"its window error is {typeset(fit.window_error, 3)} eV"
+                if fit.window_error is not None
+                else "it has no window error"
+            )
             warnings.append(f"The form {fit.form} misses the computed limit by {typeset(miss, 3)} eV; {error}.")
     if series.is_open_shell.any():
         warnings.append(f"{int(series.is_open_shell.sum())} lengths have an open shell and are left out of the fits.")
@@ -200,7 +223,9 @@ def warn(asked: Asked, result: SeriesResult) -> tuple[str, ...]:
     elif series.reason:
         warnings.append(f"There is no extended gap: {series.reason}.")
     if asked.study["ends"] == "ring":
-        warnings.append("Rings fall into families by electrons mod 4; one smooth curve through all of them means nothing.")
+        warnings.append(
+            "Rings fall into families by electrons mod 4; one smooth curve through all of them means nothing."
+        )
     return tuple(warnings)
 
 

@@ -61,7 +61,10 @@ def report(asked: Asked, result: LevelsResult) -> tuple[Quantity, ...]:
         ),
         asked.quantity("open_shell", "count", float(levels.is_open_shell), "1 for an open shell, otherwise 0"),
         asked.quantity(
-            "gap_levels", "count", float(places.n_gap_levels) if has_parent else None, "levels outside every parent band"
+            "gap_levels",
+            "count",
+            float(places.n_gap_levels) if has_parent else None,
+            "levels outside every parent band",
         ),
     )
     numbers = range(levels.first + 1, levels.first + 1 + len(levels.energy))
@@ -90,14 +93,22 @@ def tabulate(asked: Asked, result: LevelsResult) -> tuple[Table, ...]:
         (Column("k", "k", "k on the parent band", "π/a", 12, 4), places.k),
         (Column("w", "W", "part of the level in the Bloch states of that k", "", 6, 3), places.W),
         (Column("k_extended", "k ext.", "k in the extended zone", "π/a", 12, 4), places.extended_k),
-        (Column("node_label", "node label", "sign changes over N − 1; a label, no k", "π/spacing", 6, 4), result.nodes or blank),
+        (
+            Column("node_label", "node label", "sign changes over N − 1; a label, no k", "π/spacing", 6, 4),
+            result.nodes or blank,
+        ),
         (Column("place", "gap level at", "where a gap level sits"), places.place),
         (Column("participation", "spread", "over how many sites it spreads", "sites", 6, 2), levels.participation),
         (Column("reason", "remark", "why k or W is missing"), tuple(reason or None for reason in places.reason)),
     )
     used = [(head, values) for head, values in columns if any(value is not None for value in values)]
     rows = tuple(tuple(_cell(value) for value in row) for row in zip(*(values for _, values in used), strict=True))
-    rows = tuple(tuple("" if value is None and head.decimals is None else value for value, (head, _) in zip(row, used, strict=True)) for row in rows)
+    rows = tuple(
+        tuple(
+            "" if value is None and head.decimals is None else value for value, (head, _) in zip(row, used, strict=True)
+        )
+        for row in rows
+    )
     caption = f"Levels of the {'molecule' if not asked.model.dimension else 'piece'}, from below."
     return (Table("levels", caption, tuple(head for head, _ in used), rows),)
 
@@ -115,15 +126,21 @@ def warn(asked: Asked, result: LevelsResult) -> tuple[str, ...]:
     if asked.model.dimension and not piece.is_ring:
         lonely = np.flatnonzero(piece.coordination == 1)
         if lonely.size and np.bincount(piece.coordination).argmax() > 2:
-            names = ", ".join(f"{asked.model.sites[piece.site[site]].name} of cell {piece.cell[site][0]}" for site in lonely[:4])
-            warnings.append(f"The cut leaves {lonely.size} one-coordinated sites ({names}); add or drop sites to finish it.")
+            names = ", ".join(
+                f"{asked.model.sites[piece.site[site]].name} of cell {piece.cell[site][0]}" for site in lonely[:4]
+            )
+            warnings.append(
+                f"The cut leaves {lonely.size} one-coordinated sites ({names}); add or drop sites to finish it."
+            )
     weak = [W for W in places.W if W is not None and W < LEAST_W]
     if weak:
         warnings.append(f"{len(weak)} levels have W below {LEAST_W}: their k says little about them.")
     if any(reason == "in a flat band" for reason in places.reason):
         warnings.append("Levels in a flat band have no k.")
     if levels.is_selected:
-        warnings.append(f"Only {len(levels.energy)} of {levels.n_levels} levels, those around the Fermi energy, were computed.")
+        warnings.append(
+            f"Only {len(levels.energy)} of {levels.n_levels} levels, those around the Fermi energy, were computed."
+        )
     return tuple(warnings)
 
 

@@ -57,7 +57,11 @@ def _diagram(asked: Asked, result: "LevelsResult") -> Figure:
         axes.margins(y=0.08)
         pen.energy_axis(axes, beta=asked.model.beta_unit, alpha=asked.model.alpha_unit)
 
-    return pen.drawn(f"{asked.name}-diagram" if asked.name != "levels" else "diagram", strokes, words=(f"Level diagram: {words}", caption))
+    return pen.drawn(
+        f"{asked.name}-diagram" if asked.name != "levels" else "diagram",
+        strokes,
+        words=(f"Level diagram: {words}", caption),
+    )
 
 
 def _near_fermi(result: "LevelsResult") -> Any:
@@ -88,8 +92,9 @@ def _on_bands(asked: Asked, result: "LevelsResult") -> Figure:
     nodes = ""
     if result.nodes and placed:
         labels = ", ".join(typeset(label, 3) for label in result.nodes[:6]) + (", …" if len(result.nodes) > 6 else "")
-        nodes = f" The node labels (crosses; {labels} of π/spacing) count sign changes: they are no k and do not lie on the band."
-    caption = f"Levels of the piece on the bands of its crystal: {words} Filled: occupied, ring: empty, square: gap level.{nodes}"
+        nodes = f" The node labels (crosses; {labels} of π/spacing) count sign changes: no k, they miss the band."
+    signs = "Filled: occupied, ring: empty, square: gap level."
+    caption = f"Levels of the piece on the bands of its crystal: {words} {signs}{nodes}"
 
     def strokes(axes: Any) -> None:
         _bands(axes, asked, result)

@@ -7,7 +7,14 @@ from typing import Any
 from bandbook.model import Model
 from bandbook.parameters import MOST_CELLS, Field, Problem, one_of
 
-CELLS = Field("cells", "cells", "number of cells; a list of them in two and three dimensions", default=None, least=1, most=MOST_CELLS)
+CELLS = Field(
+    "cells",
+    "cells",
+    "number of cells; a list of them in two and three dimensions",
+    default=None,
+    least=1,
+    most=MOST_CELLS,
+)
 LENGTHS = Field("cells", "lengths", "numbers of cells, a range or a list", least=1, most=MOST_CELLS)
 CUT = (
     Field("ends", "choice", "open ends, or joined to a ring", default="open", choices=("open", "ring")),
@@ -63,7 +70,9 @@ def _ring(study: Mapping[str, Any], model: Model) -> list[Problem]:
     given = [name for name in ("add", "drop") if study[name]]
     if study["ends"] != "ring":
         return []
-    return [Problem(f'"{name}" with ends = "ring"', "a ring has no end", "remove one of them", (name,)) for name in given]
+    return [
+        Problem(f'"{name}" with ends = "ring"', "a ring has no end", "remove one of them", (name,)) for name in given
+    ]
 
 
 def _names(study: Mapping[str, Any], model: Model) -> list[Problem]:
@@ -75,7 +84,9 @@ def _names(study: Mapping[str, Any], model: Model) -> list[Problem]:
     for row, change in enumerate(study["changes"]):
         for key in ("site", "from", "to"):
             name = change[key]
-            problems += [] if name is None or name in names else [one_of(name, names, "site").below("changes", row, key)]
+            problems += (
+                [] if name is None or name in names else [one_of(name, names, "site").below("changes", row, key)]
+            )
     return problems
 
 
@@ -88,7 +99,9 @@ def _changes(study: Mapping[str, Any], model: Model) -> list[Problem]:
             allowed = "site with alpha or remove = true; or from, to and beta"
             problems.append(Problem("a change of neither or both kinds", allowed, "correct it", ("changes", row)))
         if model.dimension == 0 and change["cell"] is not None:
-            problems.append(Problem("a cell on a molecule", "a molecule has none", "remove it", ("changes", row, "cell")))
+            problems.append(
+                Problem("a cell on a molecule", "a molecule has none", "remove it", ("changes", row, "cell"))
+            )
         if model.dimension and change["cell"] is None:
             problems.append(Problem("no cell", "cells count from 0", "add cell = 0", ("changes", row)))
     return problems

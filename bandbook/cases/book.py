@@ -27,7 +27,7 @@ class Book:
     content: Path
     cases: tuple[Case, ...] = ()
     sets: Mapping[str, ParameterSet] = field(default_factory=dict)
-    sources: Sources = Sources()
+    sources: Sources = field(default_factory=Sources)
 
     @property
     def problems(self) -> tuple[Problem, ...]:

@@ -154,7 +154,9 @@ def _bad_name(block: Block) -> Problem:
 
 
 def _twice(what: str, name: str) -> Problem:
-    return Problem(f'the {what} "{name}" stands twice', f"every {what} has a name of its own", 'add name = "…"', ("name",))
+    return Problem(
+        f'the {what} "{name}" stands twice', f"every {what} has a name of its own", 'add name = "…"', ("name",)
+    )
 
 
 def _check_steps(desk: _Desk) -> None:
@@ -176,7 +178,14 @@ def _check_study(desk: _Desk, block: Block, bound: set[str]) -> None:
     default = question if isinstance(question, str) and NAME.match(question) else "study"
     name = _name_of(block, default=default)
     if name is None or name == "workings":
-        desk.note(block, [_bad_name(block) if name is None else Problem('the name "workings" is taken', "another", "rename it", ("name",))])
+        desk.note(
+            block,
+            [
+                _bad_name(block)
+                if name is None
+                else Problem('the name "workings" is taken', "another", "rename it", ("name",))
+            ],
+        )
         return
     if name in desk.studies:
         desk.note(block, [_twice("study", name)])

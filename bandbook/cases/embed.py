@@ -18,13 +18,19 @@ def embedded(paths: tuple[str, ...], book: Book) -> tuple[dict[str, str], list[P
         except (OSError, RuntimeError, ValueError):
             inside = False
         if not inside:
-            problems.append(Problem(f'the path "{path}" leads out of the book', "paths below content/", "correct it", ("uses",)))
+            problems.append(
+                Problem(f'the path "{path}" leads out of the book', "paths below content/", "correct it", ("uses",))
+            )
             continue
         if not target.is_file():
-            problems.append(Problem(f'there is no file "{path}"', "a text file below content/", "correct the path", ("uses",)))
+            problems.append(
+                Problem(f'there is no file "{path}"', "a text file below content/", "correct the path", ("uses",))
+            )
             continue
         text, wrong = read_text(target)
-        problems += [Problem(f'"{path}": {problem.found}', problem.allowed, problem.remedy, ("uses",)) for problem in wrong]
+        problems += [
+            Problem(f'"{path}": {problem.found}', problem.allowed, problem.remedy, ("uses",)) for problem in wrong
+        ]
         if text is not None:
             files[path] = text
     return files, problems

@@ -53,7 +53,12 @@ def read_front(text: str) -> tuple[FrontMatter, str, int, list[Problem]]:
     if match is None:
         found = "the front matter is not closed" if text.startswith("---") else "there is no front matter"
         remedy = "begin the file with ---, title: …, ---"
-        return FrontMatter(), text, 1, [Problem(found, "a case begins with its title between two lines ---", remedy).at("", 1)]
+        return (
+            FrontMatter(),
+            text,
+            1,
+            [Problem(found, "a case begins with its title between two lines ---", remedy).at("", 1)],
+        )
     rest = text[match.end() :]
     front, problems = _read(match[1])
     return front, rest, text[: match.end()].count("\n") + 1, problems
@@ -69,7 +74,9 @@ def _read(source: str) -> tuple[FrontMatter, list[Problem]]:
         mark = getattr(error, "problem_mark", None)
         what = getattr(error, "problem", None) or str(error)
         line = min(mark.line, source.count("\n")) + 2 if mark else 2
-        return FrontMatter(), [Problem(f"the front matter is no YAML: {what}", "key: value lines", "correct it").at("", line)]
+        return FrontMatter(), [
+            Problem(f"the front matter is no YAML: {what}", "key: value lines", "correct it").at("", line)
+        ]
     if not isinstance(given, dict) or not isinstance(node, yaml.MappingNode):
         return FrontMatter(), [Problem("the front matter holds no keys", "at least a title", "add title: …").at("", 1)]
     lines = {str(key.value): key.start_mark.line + 2 for key, _ in node.value}
@@ -77,7 +84,7 @@ def _read(source: str) -> tuple[FrontMatter, list[Problem]]:
     twice = [name for number, name in enumerate(names) if name in names[:number]]
     problems = [Problem(f'the key "{name}" stands twice', "once", "remove one", (name,)) for name in twice]
     lists, found = _lists({str(key): value for key, value in given.items()})
-    checked, wrong = check(FIELDS, {key: value for key, value in lists.items()})
+    checked, wrong = check(FIELDS, lists)
     problems += [*found, *wrong]
     placed = [problem.at("", lines.get(str(problem.key[0]), 1) if problem.key else 1) for problem in problems]
     return _front(checked, lists, lines), placed

@@ -1,7 +1,7 @@
 """From the text of a case file to a Case with line numbers; what is wrong is collected, never raised."""
 
 import re
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Final
 
@@ -30,7 +30,7 @@ class Case:
 
     id: str
     file: str
-    front: FrontMatter = FrontMatter()
+    front: FrontMatter = field(default_factory=FrontMatter)
     parts: tuple[Prose | Block, ...] = ()
     problems: tuple[Problem, ...] = ()
 
@@ -63,7 +63,9 @@ def case_of(text: str, *, identity: str, file: str, problems: list[Problem] | No
     """Return the Case of a text."""
     found = list(problems or [])
     if not text.strip():
-        found.append(Problem("the file is empty", "front matter, a system and a study", "write the case or remove the file"))
+        found.append(
+            Problem("the file is empty", "front matter, a system and a study", "write the case or remove the file")
+        )
         return Case(identity, file, problems=tuple(problem.at(file, 1) for problem in found))
     front, rest, first, wrong = read_front(text)
     parts, unclosed = split(rest, first)

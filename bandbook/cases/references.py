@@ -22,7 +22,10 @@ class QuantityPattern(Protocol):
     """A quantity that a question promises."""
 
     @property
-    def pattern(self) -> str: ...
+    def pattern(self) -> str:
+        """Its name, parts that vary in angle brackets."""
+        ...
+
     def fits(self, name: str) -> bool:
         """Return whether a name is of this pattern."""
         ...
@@ -75,7 +78,12 @@ def _rows(table: Mapping[str, Any]) -> list[tuple[str, Any]]:
     """Return quantity → row; ``bands.gap = …`` without quotes, which TOML reads as nested tables, is understood too."""
     rows = []
     for name, entry in table.items():
-        if isinstance(entry, Mapping) and "." not in name and entry and all(isinstance(row, Mapping) for row in entry.values()):
+        if (
+            isinstance(entry, Mapping)
+            and "." not in name
+            and entry
+            and all(isinstance(row, Mapping) for row in entry.values())
+        ):
             rows += [(f"{name}.{inner}", row) for inner, row in entry.items()]
         else:
             rows.append((name, entry))

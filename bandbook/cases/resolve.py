@@ -11,7 +11,9 @@ from bandbook.parameters import near, one_of
 
 _REFERENCE = re.compile(r"@([a-z0-9][a-z0-9.-]*)\.([A-Za-z][A-Za-z0-9_]*)\Z")
 #: Keys whose text is never a number.
-_WORDS = frozenset({"name", "lattice", "question", "system", "built_by", "source", "note", "unit", "from", "to", "site"})
+_WORDS = frozenset(
+    {"name", "lattice", "question", "system", "built_by", "source", "note", "unit", "from", "to", "site"}
+)
 
 
 @dataclass(frozen=True)

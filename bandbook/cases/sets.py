@@ -67,7 +67,9 @@ def read_parameter_set(path: Path, file: str) -> ParameterSet:
     name = path.stem
     text, problems = read_text(path)
     if not ID.match(name) or "/" in name:
-        problems.append(Problem(f'the set is called "{name}"', "small letters, digits, points, hyphens", "rename the file"))
+        problems.append(
+            Problem(f'the set is called "{name}"', "small letters, digits, points, hyphens", "rename the file")
+        )
     if text is None:
         return ParameterSet(name, file, problems=tuple(problem.at(file, problem.line or 1) for problem in problems))
     table, lines, wrong = read_toml(text, 0)
@@ -112,7 +114,9 @@ def _values(given: Mapping[str, Any], whole: Mapping[str, Any]) -> tuple[dict[st
         checked, wrong = check(_VALUE, row)
         has_origin = any(checked.get(key) or whole.get(key) for key in ("source", "note"))
         if not wrong and not has_origin:
-            wrong = [Problem("neither source nor note", "every value names one, or takes the set's", "add source or note")]
+            wrong = [
+                Problem("neither source nor note", "every value names one, or takes the set's", "add source or note")
+            ]
         problems += [problem.below("values", name) for problem in wrong]
         if not wrong:
             values[name] = ParameterValue(**checked)

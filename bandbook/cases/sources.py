@@ -49,16 +49,23 @@ def read_sources(path: Path, file: str) -> Sources:
         data = parse_string(text, "bibtex")
     except PybtexSyntaxError as error:
         line = int(getattr(error, "lineno", 1) or 1)
-        return Sources(problems=(Problem(f"no BibTeX: {error}".split("\n")[0], "BibTeX entries", "correct it").at(file, line),))
+        return Sources(
+            problems=(Problem(f"no BibTeX: {error}".split("\n")[0], "BibTeX entries", "correct it").at(file, line),)
+        )
     except PybtexError as error:
         match = re.search(r"key \"?([\w:-]+)", str(error))
         line = _line_of(text, match[1]) if match else 1
         return Sources(problems=(Problem(f"no BibTeX: {error}", "each key once", "correct it").at(file, line),))
     entries = {}
     for key, entry in data.entries.items():
-        people = [" ".join([*person.first_names, *person.prelast_names, *person.last_names]) for person in entry.persons.get("author", [])]
+        people = [
+            " ".join([*person.first_names, *person.prelast_names, *person.last_names])
+            for person in entry.persons.get("author", [])
+        ]
         fields = {name.lower(): _plain(value) for name, value in entry.fields.items()}
-        entries[key] = Source(key, _citation([_plain(person) for person in people], fields), fields, _line_of(text, key))
+        entries[key] = Source(
+            key, _citation([_plain(person) for person in people], fields), fields, _line_of(text, key)
+        )
     return Sources(entries)
 
 

@@ -8,7 +8,9 @@ from typing import Any
 from bandbook.errors import Problem
 
 Lines = dict[tuple[str | int, ...], int]
-_KEY = re.compile(r"""^\s*((?:"[^"]*"|'[^']*'|[A-Za-z0-9_-]+)(?:\s*\.\s*(?:"[^"]*"|'[^']*'|[A-Za-z0-9_-]+))*)\s*=(?!=)""")
+_KEY = re.compile(
+    r"""^\s*((?:"[^"]*"|'[^']*'|[A-Za-z0-9_-]+)(?:\s*\.\s*(?:"[^"]*"|'[^']*'|[A-Za-z0-9_-]+))*)\s*=(?!=)"""
+)
 _HEAD = re.compile(r"^\s*(\[\[?)\s*([^\[\]]+?)\s*\]\]?\s*(?:#.*)?$")
 _COMMA = re.compile(r"=\s*[-+]?\d+,\d+\s*(?:#.*)?$")
 
@@ -45,7 +47,7 @@ def _syntax(message: str, source: str, fence: int) -> Problem:
         found = f'a decimal comma in "{text}"'
         return Problem(found, "the decimal sign is a point", f"write {wanted}").at("", place)
     found = f'"{text}" is no TOML ({what})' if text else f"no TOML ({what})"
-    return Problem(found, 'a line is key = value, text in quotes, each key once', "correct the line").at("", place)
+    return Problem(found, "a line is key = value, text in quotes, each key once", "correct the line").at("", place)
 
 
 def _not_finite(table: Mapping[str, Any], lines: Lines, fence: int) -> list[Problem]:
@@ -54,7 +56,9 @@ def _not_finite(table: Mapping[str, Any], lines: Lines, fence: int) -> list[Prob
     for key, value in table.items():
         if hasattr(value, "isoformat"):
             found = f"found the date or time {value}"
-            problems.append(Problem(found, "no key here takes one", "put it in quotes", (key,)).at("", lines.get((key,), fence)))
+            problems.append(
+                Problem(found, "no key here takes one", "put it in quotes", (key,)).at("", lines.get((key,), fence))
+            )
     return problems
 
 

@@ -25,7 +25,7 @@ COMMANDS = (start, check, run, bind, list_cases, show)
 )
 @click.pass_context
 def main(context: click.Context, book: str | None) -> None:
-    """Keep a logbook of one-electron studies: check, run and bind its case files.
+    r"""Keep a logbook of one-electron studies: check, run and bind its case files.
 
     \b
     Example:

@@ -14,7 +14,7 @@ from bandbook.website import build_site
 @click.option("--again", is_flag=True, help="Run also what is fresh.")
 @click.pass_context
 def bind(context: click.Context, to: str | None, again: bool) -> None:  # noqa: FBT001 - a flag of the command line
-    """Run what is stale, then write the web pages. A failing case never stops the others.
+    r"""Run what is stale, then write the web pages. A failing case never stops the others.
 
     \b
     Example:

@@ -11,7 +11,7 @@ from bandbook.errors import AuthorError
 @click.argument("cases", nargs=-1, metavar="[CASE…]")
 @click.pass_context
 def check(context: click.Context, cases: tuple[str, ...]) -> None:
-    """Read the cases and print every mistake; computes and executes nothing.
+    r"""Read the cases and print every mistake; computes and executes nothing.
 
     \b
     Example:

@@ -28,8 +28,10 @@ class Door(click.Group):
             tell(str(error))
             context.exit(error.exit_status)
         except OSError as error:
-            tell(f"{error.filename or 'the system'}: {error.strerror or error}; the book needs to read and write its folder;"
-                 " check the space left and the rights")
+            tell(
+                f"{error.filename or 'the system'}: {error.strerror or error}; the book must be readable and writable;"
+                " check the space left and the rights"
+            )
             context.exit(4)
 
 

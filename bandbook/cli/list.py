@@ -12,7 +12,7 @@ from bandbook.cli.door import settings_of
 @click.option("--json", "as_json", is_flag=True, help="Print the list as JSON.")
 @click.pass_context
 def list_cases(context: click.Context, as_json: bool) -> None:  # noqa: FBT001 - a flag of the command line
-    """List each case: fresh, stale or failed, with its key quantities. Runs nothing.
+    r"""List each case: fresh, stale or failed, with its key quantities. Runs nothing.
 
     \b
     Example:

@@ -11,7 +11,7 @@ from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell
 @click.option("--again", is_flag=True, help="Run also what is fresh.")
 @click.pass_context
 def run(context: click.Context, cases: tuple[str, ...], again: bool) -> None:  # noqa: FBT001 - a flag of the command line
-    """Run the cases whose result is stale. Running a case runs its author's Python.
+    r"""Run the cases whose result is stale. Running a case runs its author's Python.
 
     \b
     Example:

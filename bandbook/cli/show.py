@@ -14,7 +14,7 @@ from bandbook.cli.door import settings_of
 @click.option("--json", "as_json", is_flag=True, help="Print record.json.")
 @click.pass_context
 def show(context: click.Context, case: str, as_json: bool) -> None:  # noqa: FBT001 - a flag of the command line
-    """Print the record of a case: quantities, reference values, warnings, key. Runs nothing.
+    r"""Print the record of a case: quantities, reference values, warnings, key. Runs nothing.
 
     \b
     Example:
@@ -41,7 +41,8 @@ def print_record(record: dict[str, Any]) -> None:
         verdict = "agrees" if row["agrees"] else "DISAGREES"
         unit = "β" if row["unit"] == "beta" else row["unit"]
         basis = row["source"] or row["note"]
-        click.echo(f"  {verdict}: {row['quantity']} is {row['found']} {unit}, reference {row['value']} ± {row['within']} ({basis})")
+        reference = f"reference {row['value']} ± {row['within']} ({basis})"
+        click.echo(f"  {verdict}: {row['quantity']} is {row['found']} {unit}, {reference}")
     for warning in record["warnings"]:
         click.echo(f"  warning: {warning}")
     click.echo(f"  {record['key']}")

@@ -11,7 +11,7 @@ from bandbook.cli.door import tell
 @click.command()
 @click.argument("folder", type=click.Path(file_okay=False))
 def start(folder: str) -> None:
-    """Write a new book: settings, one case, a parameter set, a workflow file for CI.
+    r"""Write a new book: settings, one case, a parameter set, a workflow file for CI.
 
     \b
     Example:

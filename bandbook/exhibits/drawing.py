@@ -111,7 +111,8 @@ def drawn(name: str, draw: Callable[[Any], None], *, words: tuple[str, str], **s
     """
     with drawing(name, alt=words[0], caption=words[1], **size) as sheet:
         draw(sheet.axes if size.get("columns", 1) > 1 else sheet.axes[0])
-    return sheet.figure
+    figure: Figure = sheet.figure
+    return figure
 
 
 def finished(svg: str, name: str, alt: str) -> str:

@@ -71,8 +71,7 @@ class QuantityName:
         """
         parts = re.split(r"(<\w+>)", self.pattern)
         text = "".join(
-            (r"\d+" if part == "<n>" or part == "<N>" else r".+") if part.startswith("<") else re.escape(part)
-            for part in parts
+            (r"\d+" if part in {"<n>", "<N>"} else r".+") if part.startswith("<") else re.escape(part) for part in parts
         )
         return re.fullmatch(text, name) is not None
 

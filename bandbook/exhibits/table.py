@@ -58,7 +58,7 @@ class Table:
         object.__setattr__(self, "rows", rows)
 
     def to_csv(self) -> str:
-        """Return the table as CSV (RFC 4180, ``\\n``): heads ``name`` or ``name (unit)``, a point for the decimal, nothing for no answer."""
+        """Return the table as CSV: heads ``name`` or ``name (unit)``, decimal points, nothing for no answer."""
         out = io.StringIO()
         writer = csv.writer(out, lineterminator="\n")
         writer.writerow([f"{column.name} ({column.unit})" if column.unit else column.name for column in self.columns])
@@ -80,7 +80,8 @@ class Table:
         caption = html.escape(self.caption) + (
             f" First {self.most_shown} of {len(self.rows)} rows; all are in the CSV." if more > 0 else ""
         )
-        return f"<table data-table><caption>{caption}</caption><thead><tr>{heads}</tr></thead><tbody>{body}</tbody></table>"
+        head = f"<caption>{caption}</caption><thead><tr>{heads}</tr></thead>"
+        return f"<table data-table>{head}<tbody>{body}</tbody></table>"
 
     def as_dict(self) -> dict[str, Any]:
         """Return what a page needs besides the CSV: plain JSON."""

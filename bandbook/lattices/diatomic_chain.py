@@ -14,7 +14,7 @@ FIELDS = (
 )
 
 
-def diatomic_chain(  # noqa: PLR0913 - the fields of the lattice
+def diatomic_chain(
     *,
     beta_inside: float,
     beta_between: float,

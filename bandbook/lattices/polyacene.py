@@ -23,9 +23,7 @@ def polyacene(*, beta: float, alpha: float = 0.0, period: float | None = None) -
     half = 0.0 if period is None else period / 2
     spots = ((0.0, bond / 2, 0.0), (0.0, -bond / 2, 0.0), (half, bond, 0.0), (half, -bond, 0.0))
     names = ("A1", "B1", "A2", "B2")
-    sites = tuple(
-        Site(name, alpha, None if period is None else spot) for name, spot in zip(names, spots, strict=True)
-    )
+    sites = tuple(Site(name, alpha, None if period is None else spot) for name, spot in zip(names, spots, strict=True))
     home = tuple(Coupling(start, end, beta, (0,)) for start, end in ((0, 1), (0, 2), (1, 3)))
     onward = tuple(Coupling(start, end, beta, (1,)) for start, end in ((2, 0), (3, 1)))
     return Model(sites, home + onward, dimension=1, vectors=along_x(period), beta_unit=beta, alpha_unit=alpha)

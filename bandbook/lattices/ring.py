@@ -41,5 +41,5 @@ RING = Lattice(
     "A1, A2, … around the ring",
     (BETA, SITES, ALPHA),
     ring,
-    note="A molecule has no k; for k labels take the chain with ends = \"ring\".",
+    note='A molecule has no k; for k labels take the chain with ends = "ring".',
 )

@@ -5,8 +5,8 @@ from collections.abc import Mapping
 from typing import Any
 
 ABOUT = (
-    "This notebook was written from a checked case file. Its first code cell carries every parameter; it opens no other\n"
-    "file and reruns wherever `bandbook` is installed. Running it runs the case's author's own Python, if it has any."
+    "This notebook was written from a checked case file. Its first code cell carries every parameter; it opens no\n"
+    "other file and reruns wherever `bandbook` is installed. Running it runs its author's own Python, if it has any."
 )
 
 

@@ -66,13 +66,17 @@ def _take_answer(found: Harvest, answer: dict[str, Any], step: str) -> None:
         path = f"tables/{_name(study, table['name'])}.csv"
         found.files[path] = table["csv"].encode()
         words = {"alt": "", "caption": table["caption"], "html": table["html"]}
-        found.exhibits.append({"study": study, "kind": "table", "name": table["name"], "file": path, "step": step, **words})
+        found.exhibits.append(
+            {"study": study, "kind": "table", "name": table["name"], "file": path, "step": step, **words}
+        )
     for figure in answer["figures"]:
         path = f"figures/{_name(study, figure['name'])}.svg"
         if "svg" in figure:
             found.files[path] = figure["svg"].encode()
         words = {"alt": figure["alt"], "caption": figure["caption"]}
-        found.exhibits.append({"study": study, "kind": "figure", "name": figure["name"], "file": path, "step": step, **words})
+        found.exhibits.append(
+            {"study": study, "kind": "figure", "name": figure["name"], "file": path, "step": step, **words}
+        )
 
 
 def _name(study: str, name: str) -> str:

@@ -45,10 +45,10 @@ def kernel_environment(scratch: Path) -> dict[str, str]:
 
 def matplotlib_folder(scratch: Path) -> Path:
     """Return where matplotlib keeps its list of fonts: beside the user's caches, so that it is made once."""
-    import matplotlib
+    import matplotlib as mpl
 
     with contextlib.suppress(OSError):
-        return Path(matplotlib.get_cachedir())
+        return Path(mpl.get_cachedir())
     return scratch / "matplotlib"
 
 
@@ -85,7 +85,7 @@ def _manager(scratch: Path) -> Any:
     argv = [sys.executable, "-m", "ipykernel_launcher", "-f", "{connection_file}", "--HistoryManager.enabled=False"]
     spec = KernelSpec(argv=argv, display_name="Python 3", language="python", interrupt_mode="signal")
 
-    class OneSpec(KernelSpecManager):  # type: ignore[misc]
+    class OneSpec(KernelSpecManager):
         def get_kernel_spec(self, kernel_name: str) -> Any:  # noqa: ARG002 - there is only one
             return spec
 

@@ -70,7 +70,9 @@ def _execute(notebook: Any, manager: Any, *, timeout: float, place: Mapping[str,
         raise _failed(notebook, error) from error
     except CellTimeoutError as error:
         found = f"a cell ran longer than {timeout:g} s"
-        raise RunError(f"{found}; the limit is the book's `timeout`; make it faster or raise it", reason="timed out") from error
+        raise RunError(
+            f"{found}; the limit is the book's `timeout`; make it faster or raise it", reason="timed out"
+        ) from error
     except DeadKernelError as error:
         raise _died() from error
     except RuntimeError as error:

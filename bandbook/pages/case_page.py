@@ -14,12 +14,10 @@ from bandbook.pages.templates import render
 def case_page(view: CaseView, *, ids: Collection[str], override: Any = None) -> str:
     """Return the page's Markdown."""
     parts = [front_matter(view.title, view), heading(view.title)]
-    for name, facts in TOP:
-        parts.append(_section(name, facts(view), override))
+    parts += [_section(name, facts(view), override) for name, facts in TOP]
     for part in view.checked.case.parts:
         parts.append(_prose(view, part, ids) if isinstance(part, Prose) else _block(view, part, override))
-    for name, facts in BOTTOM:
-        parts.append(_section(name, facts(view), override))
+    parts += [_section(name, facts(view), override) for name, facts in BOTTOM]
     return "\n\n".join(part for part in parts if part) + "\n"
 
 
@@ -28,12 +26,16 @@ def front_matter(title: str, view: CaseView | None = None) -> str:
     facts: dict[str, Any] = {"title": title}
     if view is not None:
         facts |= {"case": view.id, "status": view.status}
-    return "---\n" + "".join(f"{key}: {json.dumps(value, ensure_ascii=False)}\n" for key, value in facts.items()) + "---"
+    return (
+        "---\n" + "".join(f"{key}: {json.dumps(value, ensure_ascii=False)}\n" for key, value in facts.items()) + "---"
+    )
 
 
 def heading(title: str) -> str:
     """Return a title as Markdown heading in which nothing has a meaning of its own."""
-    escaped = "".join(f"\\{sign}" if sign in "\\`*_{}[]()#+-.!|<>&" and sign not in "<>&-.()" else sign for sign in title)
+    escaped = "".join(
+        f"\\{sign}" if sign in "\\`*_{}[]()#+-.!|<>&" and sign not in "<>&-.()" else sign for sign in title
+    )
     return "# " + escaped.replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;")
 
 

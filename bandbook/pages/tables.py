@@ -60,12 +60,16 @@ def set_pages(view: BookView) -> dict[str, str]:
     pages = {}
     for name, parameters in view.book.sets.items():
         users = {
-            value: sorted({case.id for case in view.cases for use in case.checked.uses if (use.set, use.name) == (name, value)})
+            value: sorted(
+                {case.id for case in view.cases for use in case.checked.uses if (use.set, use.name) == (name, value)}
+            )
             for value in parameters.values
         }
         facts = {"set": parameters, "users": users, "problems": [str(problem) for problem in parameters.problems]}
         body = render("pages/parameters.html", facts, override=view.templates)
-        pages[f"parameters/{name}/index.md"] = f"{front_matter(parameters.title)}\n\n{heading(parameters.title)}\n\n{body}\n"
+        pages[f"parameters/{name}/index.md"] = (
+            f"{front_matter(parameters.title)}\n\n{heading(parameters.title)}\n\n{body}\n"
+        )
     listing = render("pages/sets.html", {"sets": view.book.sets}, override=view.templates)
     pages["parameters/index.md"] = f"{front_matter('Parameter sets')}\n\n# Parameter sets\n\n{listing}\n"
     return pages

@@ -171,9 +171,7 @@ def _edges(model: Model, mesh: Real, values: Real, width: float) -> _Edges:
     return _Edges(valence, conduction, kind, 0.0)
 
 
-def _direct(
-    model: Model, mesh: Real, values: Real, edges: _Edges
-) -> tuple[float | None, tuple[float, ...] | None]:
+def _direct(model: Model, mesh: Real, values: Real, edges: _Edges) -> tuple[float | None, tuple[float, ...] | None]:
     if edges.valence is None or edges.conduction is None:
         return None, None
     band = edges.conduction.band - 1
@@ -188,5 +186,9 @@ def _direct(
 
 def _mass(model: Model, extreme: Extreme | None, kind: str, width: float) -> Mass:
     if extreme is None or kind != "insulator":
-        return Mass(None, (), "no gap, so no extreme of its own" if extreme is not None or kind != "insulator" else "no such band")
+        return Mass(
+            None,
+            (),
+            "no gap, so no extreme of its own" if extreme is not None or kind != "insulator" else "no such band",
+        )
     return mass_at(model, np.array(extreme.k), band=extreme.band - 1, width=width)

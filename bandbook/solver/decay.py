@@ -43,7 +43,7 @@ def slowest_decay(model: Model, energy: float) -> float | None:
 def _blocks(model: Model, energy: float) -> list[Real]:
     """Return H(R) − E S(R) for R = −r … r."""
     reach = max((abs(coupling.cell[0]) for coupling in model.couplings), default=0) or 1
-    blocks = [np.zeros((model.n_sites, model.n_sites)) for _ in range(2 * reach + 1)]
+    blocks: list[Real] = [np.zeros((model.n_sites, model.n_sites)) for _ in range(2 * reach + 1)]
     blocks[reach][range(model.n_sites), range(model.n_sites)] = [site.alpha - energy for site in model.sites]
     for coupling in model.couplings:
         value = coupling.beta - energy * coupling.overlap

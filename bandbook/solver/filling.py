@@ -1,5 +1,6 @@
 """Fermi energy and energy per cell of a crystal, from its exact electron count."""
 
+import itertools
 from typing import Final
 
 import numpy as np
@@ -92,7 +93,7 @@ def _line_energy(model: Model, fermi: float | None) -> float | None:
 
     points = [0.0, 1.0] if fermi is None else _fermi_points(model, fermi)
     total = 0.0
-    for low, high in zip(points[:-1], points[1:], strict=True):
+    for low, high in itertools.pairwise(points):
         total += integrate.quad(occupied, low, high, epsabs=1e-12, epsrel=1e-12, limit=200)[0]
     return 2 * total + (0.0 if fermi is None else model.n_electrons * fermi)
 

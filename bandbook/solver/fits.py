@@ -75,11 +75,11 @@ def _lengths(form: str, n_cells: Real, oscillators: int) -> Real:
 
 
 def _line(n: Real, gap: Real, power: int) -> Real:
-    return np.polynomial.polynomial.polyfit(n ** (-float(power)), gap, 1)
+    return np.asarray(np.polynomial.polynomial.polyfit(n ** (-float(power)), gap, 1), dtype=np.float64)
 
 
 def _kuhn(n: Real, p: Real) -> Real:
-    return p[0] * np.sqrt(np.maximum(1 + 2 * p[1] * np.cos(np.pi / (n + 1)), 1e-12))
+    return np.asarray(p[0] * np.sqrt(np.maximum(1 + 2 * p[1] * np.cos(np.pi / (n + 1)), 1e-12)), dtype=np.float64)
 
 
 def _shifted_start(n: Real, gap: Real) -> Real:
@@ -87,7 +87,12 @@ def _shifted_start(n: Real, gap: Real) -> Real:
     return np.array([line[0], line[1], 0.5])
 
 
+def _quadratic_start(n: Real, gap: Real) -> Real:
+    return np.asarray(np.polynomial.polynomial.polyfit(1 / n, gap, 2), dtype=np.float64)
+
+
 def _exponential_start(n: Real, gap: Real) -> Real:
+    del n
     return np.array([gap[-1], gap[0] * 1.05, 0.5])
 
 
@@ -109,7 +114,7 @@ FORMS: Final[Mapping[str, Form]] = {
         Form(
             "quadratic", "A + B/N + C/N²", ("A", "B", "C"),
             lambda n, p: p[0] + p[1] / n + p[2] / n**2,
-            lambda n, gap: np.polynomial.polynomial.polyfit(1 / n, gap, 2), lambda p: float(p[0]), is_linear=True,
+            _quadratic_start, lambda p: float(p[0]), is_linear=True,
         ),
         Form(
             "kuhn", "E₀ √(1 + 2r cos(π/(N + 1)))", ("E0", "r"),
@@ -168,10 +173,17 @@ def _fitted(form: Form, n: Real, gap: Real) -> Real | None:
     from scipy import optimize
 
     found = optimize.least_squares(
-        lambda values: form.curve(n, values) - gap, start, method="lm", x_scale=np.maximum(np.abs(start), 0.1),
+        _misses(form, n, gap), start, method="lm", x_scale=np.maximum(np.abs(start), 0.1),
         xtol=1e-14, ftol=1e-14, gtol=1e-14, max_nfev=20_000,
     )  # fmt: skip
     return np.asarray(found.x) if found.success and np.isfinite(found.x).all() else None
+
+
+def _misses(form: Form, n: Real, gap: Real) -> Callable[[Real], Real]:
+    def misses(values: Real) -> Real:
+        return form.curve(n, values) - gap
+
+    return misses
 
 
 def _conjugation_length(values: Real) -> float | None:

@@ -1,4 +1,6 @@
-"""H(k) and S(k) of a crystal, their derivatives, and the band energies; cell gauge, k in π/a along each lattice vector."""
+"""H(k) and S(k) of a crystal, their derivatives, and the band energies; cell gauge, k in π/a along each vector."""
+
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -37,14 +39,16 @@ def bloch(model: Model, k: Real) -> tuple[Complex, Complex | None]:
     if s is not None:
         s[:, range(model.n_sites), range(model.n_sites)] = 1.0
     for coupling in model.couplings:
-        phase = np.exp(1j * np.pi * (k @ np.array(coupling.cell, dtype=np.float64))) if model.dimension else np.ones(len(k))
+        phase = (
+            np.exp(1j * np.pi * (k @ np.array(coupling.cell, dtype=np.float64))) if model.dimension else np.ones(len(k))
+        )
         _add(h, coupling.start, coupling.end, coupling.beta * phase)
         if s is not None:
             _add(s, coupling.start, coupling.end, coupling.overlap * phase)
     return h, s
 
 
-def _add(matrices: Complex, start: int, end: int, values: NDArray[np.complex128]) -> None:
+def _add(matrices: Complex, start: int, end: int, values: NDArray[np.inexact[Any]]) -> None:
     matrices[:, start, end] += values
     matrices[:, end, start] += values.conj()
 
@@ -89,7 +93,8 @@ def band_energies(model: Model, k: Real) -> Real:
 
 def _energies(model: Model, k: Real) -> Real:
     h, s = bloch(model, k)
-    return np.linalg.eigvalsh(h if s is None else orthogonalised(h, s, k)[0])
+    energies: Real = np.linalg.eigvalsh(h if s is None else orthogonalised(h, s, k)[0]).astype(np.float64)
+    return energies
 
 
 def orthogonalised(h: Complex, s: Complex, k: Real) -> tuple[Complex, Complex]:
@@ -104,7 +109,7 @@ def orthogonalised(h: Complex, s: Complex, k: Real) -> tuple[Complex, Complex]:
         place = ", ".join(f"{part:.4f}" for part in k[worst])
         found = f"the overlap matrix at k = ({place}) π/a has the eigenvalue {lowest[worst]:.3g}"
         raise PhysicsError(f"{found}; it must be positive definite; make the overlap integrals smaller")
-    inverse = np.linalg.inv(np.linalg.cholesky(s))
+    inverse = np.linalg.inv(np.linalg.cholesky(s)).astype(np.complex128)
     back = inverse.conj().swapaxes(-1, -2)
     return inverse @ h @ back, back
 
@@ -115,10 +120,10 @@ def band_states(model: Model, k: Real) -> tuple[Real, Complex]:
     h, s = bloch(model, k)
     if s is None:
         energies, vectors = np.linalg.eigh(h)
-        return energies, vectors
+        return energies.astype(np.float64), vectors.astype(np.complex128)
     reduced, back = orthogonalised(h, s, k)
     energies, vectors = np.linalg.eigh(reduced)
-    return energies, back @ vectors
+    return energies.astype(np.float64), (back @ vectors).astype(np.complex128)
 
 
 def band_slopes(model: Model, k: Real) -> Real:

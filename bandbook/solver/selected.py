@@ -24,7 +24,7 @@ MOST_LEVELS: Final = 400
 #: Times a shift is moved when a factorisation fails at it.
 TRIALS: Final = 8
 #: Levels by which a window may begin or end too far out.
-SLACK: Final = 24
+SLACK: Final = 8
 #: Part of the spectrum's width by which a shift is moved then.
 NUDGE: Final = 1.37e-9
 

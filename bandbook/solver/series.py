@@ -37,9 +37,7 @@ class Cut:
 
     def piece(self, model: Model, n_cells: int) -> Piece:
         """Return the piece of ``n_cells`` cells."""
-        return cut_piece(
-            model, cells=n_cells, ends=self.ends, add=self.add, drop=self.drop, changes=self.changes
-        )
+        return cut_piece(model, cells=n_cells, ends=self.ends, add=self.add, drop=self.drop, changes=self.changes)
 
 
 @dataclass(frozen=True)
@@ -83,7 +81,9 @@ def gap_series(model: Model, *, lengths: Sequence[int], cut: Cut | None = None) 
         PhysicsError: The model is not periodic in one direction, or a piece cannot be cut.
     """
     if model.dimension != 1:
-        raise PhysicsError(f"a length series of a {model.dimension}-dimensional model; one dimension is allowed; ask another question")
+        raise PhysicsError(
+            f"a length series of a {model.dimension}-dimensional model; one dimension is allowed; ask another question"
+        )
     cut = cut or Cut()
     bands = solve_bands(model, n_points=8)
     pieces = [cut.piece(model, n_cells) for n_cells in lengths]
@@ -152,4 +152,4 @@ def _levels_in_gap(piece: Piece, bands: Any) -> Real:
     energies, _ = frontier_energies(piece, each_side=EACH_SIDE)
     margin = OUTSIDE * bands.total_width
     inside = (energies > bands.valence.energy + margin) & (energies < bands.conduction.energy - margin)
-    return energies[inside]
+    return np.asarray(energies[inside], dtype=np.float64)

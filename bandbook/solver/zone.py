@@ -60,7 +60,7 @@ def _plane_points(model: Model) -> dict[str, tuple[float, ...]]:
     is_even = abs(lengths[0] - lengths[1]) < 1e-6 * lengths[0]
     if is_even and abs(abs(cosine) - 0.5) < 1e-6:
         return {"Gamma": (0.0, 0.0), "K": (2 / 3, -2 / 3 if cosine > 0 else 2 / 3), "M": (1.0, 0.0)}
-    points = {"Gamma": (0.0, 0.0), "X": (1.0, 0.0), "M": (1.0, 1.0)}
+    points: dict[str, tuple[float, ...]] = {"Gamma": (0.0, 0.0), "X": (1.0, 0.0), "M": (1.0, 1.0)}
     return points if is_even and abs(cosine) < 1e-6 else {**points, "Y": (0.0, 1.0)}
 
 

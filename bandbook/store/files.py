@@ -55,7 +55,9 @@ def as_run_error(path: Path) -> Iterator[None]:
         yield
     except OSError as error:
         found = f"{path.name} could not be written: {error.strerror or error}"
-        raise RunError(f"{found}; the store must be writable; free space or check the rights, then run again") from error
+        raise RunError(
+            f"{found}; the store must be writable; free space or check the rights, then run again"
+        ) from error
 
 
 @contextlib.contextmanager

@@ -39,7 +39,7 @@ class Result:
 
 
 def result_bytes(content: Mapping[str, Any]) -> bytes:
-    """Return ``result.json``: the content with its own digest, readable, sorted, the same bytes for the same content."""
+    """Return ``result.json``: the content with its own digest, readable and sorted."""
     whole = {**content, "digest": digest(canonical_json(content))}
     return (json.dumps(whole, indent=1, sort_keys=True, ensure_ascii=False, allow_nan=False) + "\n").encode()
 

@@ -19,15 +19,29 @@ class Harvested(Protocol):
     """What an executed notebook gave; see ``notebooks``."""
 
     @property
-    def quantities(self) -> list[dict[str, Any]]: ...
+    def quantities(self) -> list[dict[str, Any]]:
+        """As a result has them."""
+        ...
+
     @property
-    def exhibits(self) -> list[dict[str, Any]]: ...
+    def exhibits(self) -> list[dict[str, Any]]:
+        """Figures, tables and texts."""
+        ...
+
     @property
-    def warnings(self) -> list[dict[str, str]]: ...
+    def warnings(self) -> list[dict[str, str]]:
+        """A study and a text each."""
+        ...
+
     @property
-    def files(self) -> Mapping[str, bytes]: ...
+    def files(self) -> Mapping[str, bytes]:
+        """Relative path → bytes."""
+        ...
+
     @property
-    def run(self) -> Mapping[str, Any]: ...
+    def run(self) -> Mapping[str, Any]:
+        """Times and host."""
+        ...
 
 
 class Store:

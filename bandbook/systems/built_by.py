@@ -36,7 +36,9 @@ def build(checked: Checked, builders: Builders) -> Model:
     if not callable(function):
         functions = sorted(key for key, value in builders.items() if callable(value) and not key.startswith("_"))
         remedy = near(name, functions) or f"define {name} in a workings block above the study"
-        raise AuthorError([Problem(f'no function "{name}"', "a function of an earlier workings block", remedy, ("built_by",))])
+        raise AuthorError(
+            [Problem(f'no function "{name}"', "a function of an earlier workings block", remedy, ("built_by",))]
+        )
     model = function(**(checked["with"] or {}))
     if not isinstance(model, Model):
         found = f'"{name}" returned {type(model).__name__}'

@@ -52,17 +52,15 @@ def with_common(model: Model, checked: Checked) -> Model:
     if not 0 <= electrons <= 2 * model.n_sites:
         found = f"{electrons:g} electrons on {model.n_sites} sites"
         raise AuthorError([Problem(found, f"0 to {2 * model.n_sites} fit", "correct electrons or charge")])
-    sites = model.sites if given is None else tuple(replace(site, electrons=_share(model, given)) for site in model.sites)
-    unit = checked.get("beta_unit")
-    return replace(
-        model, sites=sites, electrons=electrons, beta_unit=model.beta_unit if unit is None else float(unit)
+    sites = (
+        model.sites if given is None else tuple(replace(site, electrons=_share(model, given)) for site in model.sites)
     )
+    unit = checked.get("beta_unit")
+    return replace(model, sites=sites, electrons=electrons, beta_unit=model.beta_unit if unit is None else float(unit))
 
 
 def _share(model: Model, electrons: float) -> float:
     return float(electrons) / model.n_sites
-
-
 
 
 def problems_of(checked: Checked, build: Callable[[Checked, Builders], Model]) -> list[Problem]:

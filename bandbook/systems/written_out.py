@@ -45,7 +45,7 @@ def fields(given: Mapping[str, Any]) -> tuple[Field, ...]:  # noqa: ARG001 - one
 
 
 def inspect(checked: Checked) -> list[Problem]:
-    """Return names that no site has, cells of the wrong length, names or bonds given twice, then what the model refuses."""
+    """Return names that no site has, cells of the wrong length, anything named twice, then what the model refuses."""
     problems = [*_sites_twice(checked), *_couplings(checked)]
     return problems or problems_of(checked, build)
 
@@ -53,7 +53,9 @@ def inspect(checked: Checked) -> list[Problem]:
 def _sites_twice(checked: Checked) -> list[Problem]:
     names = [row["name"] for row in checked["sites"]]
     return [
-        Problem(f'the name "{name}" stands twice', "every site has a name of its own", "rename one", ("sites", row, "name"))
+        Problem(
+            f'the name "{name}" stands twice', "every site has a name of its own", "rename one", ("sites", row, "name")
+        )
         for row, name in enumerate(names)
         if name in names[:row]
     ]
@@ -70,7 +72,9 @@ def _couplings(checked: Checked) -> list[Problem]:
         problems += [one_of(row[end], names, "site").below(*place, end) for end in unknown]
         cell = _cell(row, dimension)
         if len(cell) != dimension:
-            wanted = "no `cell` in a molecule" if not dimension else f"{dimension} whole numbers, one each lattice vector"
+            wanted = (
+                "no `cell` in a molecule" if not dimension else f"{dimension} whole numbers, one each lattice vector"
+            )
             problems.append(Problem(f"found {len(cell)} numbers", wanted, "correct it", (*place, "cell")))
             continue
         bond, back = (row["from"], row["to"], cell), (row["to"], row["from"], tuple(-step for step in cell))

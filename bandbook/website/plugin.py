@@ -67,7 +67,7 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
         ours = [
             File(
                 path.relative_to(tree).as_posix(), str(tree), config.site_dir, use_directory_urls=False,
-                inclusion=InclusionLevel.NOT_IN_NAV if "cases" in path.relative_to(tree).parts[:1] else InclusionLevel.UNDEFINED,
+                inclusion=InclusionLevel.NOT_IN_NAV if path.is_relative_to(tree / "cases") else InclusionLevel.UNDEFINED,
             )
             for path in sorted(tree.rglob("*"))
             if path.is_file()

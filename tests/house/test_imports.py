@@ -36,7 +36,10 @@ def imported(path: Path) -> Iterator[str]:
             yield from (alias.name for alias in node.names)
         elif isinstance(node, ast.ImportFrom):
             assert node.level == 0, f"{path}: relative import; write it out"
-            yield from (f"{node.module}.{alias.name}" if node.module == "bandbook" else node.module or "" for alias in node.names)
+            yield from (
+                f"{node.module}.{alias.name}" if node.module == "bandbook" else node.module or ""
+                for alias in node.names
+            )
 
 
 def problems_of(path: Path, rules: dict[str, tuple[set[str], set[str]]]) -> list[str]:

@@ -15,12 +15,22 @@ def facts(view: CaseView, block: Block) -> dict[str, Any] | None:
     study = block.name or str(block.table.get("question", "study"))
     record = view.record
     if record is None:
-        return {"study": study, "missing": True, "figures": [], "tables": [], "strip": [], "warnings": [], "question": ""}
+        return {
+            "study": study,
+            "missing": True,
+            "figures": [],
+            "tables": [],
+            "strip": [],
+            "warnings": [],
+            "question": "",
+        }
     exhibits = [exhibit for exhibit in record.exhibits if exhibit["study"] == study]
     own = [q for q in record.quantities if q["name"].startswith(f"{study}.") and not q["recorded"]]
-    first = [q for q in own if q["name"].partition(".")[2] in {"gap_levels"} or not _is_numbered(q["name"])]
+    first = [q for q in own if q["name"].partition(".")[2] == "gap_levels" or not _is_numbered(q["name"])]
     judged = {reference["quantity"]: reference for reference in record.references}
-    strip = [{**q, "short": q["name"].partition(".")[2], "reference": judged.get(q["name"])} for q in first[:MOST_IN_STRIP]]
+    strip = [
+        {**q, "short": q["name"].partition(".")[2], "reference": judged.get(q["name"])} for q in first[:MOST_IN_STRIP]
+    ]
     return {
         "study": study,
         "question": str(block.table.get("question", "")),

@@ -24,10 +24,18 @@ def _shown(value: Any) -> str:
     if isinstance(value, bool) or not isinstance(value, int | float):
         if isinstance(value, list):
             return f"{len(value)} rows" if value and isinstance(value[0], dict) else ", ".join(map(_shown, value))
-        return ", ".join(f"{key} = {_shown(entry)}" for key, entry in value.items()) if isinstance(value, dict) else str(value)
-    return str(value).replace("-", "−") if isinstance(value, int) else typeset(value, max(2, len(str(value).partition(".")[2])))
+        return (
+            ", ".join(f"{key} = {_shown(entry)}" for key, entry in value.items())
+            if isinstance(value, dict)
+            else str(value)
+        )
+    return (
+        str(value).replace("-", "−")
+        if isinstance(value, int)
+        else typeset(value, max(2, len(str(value).partition(".")[2])))
+    )
 
 
 def _unit(key: str, value: Any) -> str:
     is_number = isinstance(value, int | float) and not isinstance(value, bool)
-    return _UNITS.get(key.split("_")[0] if key not in _UNITS else key, "") if is_number else ""
+    return _UNITS.get(key.split("_", maxsplit=1)[0] if key not in _UNITS else key, "") if is_number else ""
