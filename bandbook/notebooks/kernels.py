@@ -37,19 +37,10 @@ def kernel_environment(scratch: Path) -> dict[str, str]:
     private = {
         "IPYTHONDIR": str(scratch / "ipython"),
         "JUPYTER_CONFIG_DIR": str(scratch / "jupyter"),
-        "MPLCONFIGDIR": str(matplotlib_folder(scratch)),
+        "MATPLOTLIBRC": str(scratch / "matplotlibrc"),
         "PYTHONPATH": source,
     }
     return {**kept, **FIXED, **private}
-
-
-def matplotlib_folder(scratch: Path) -> Path:
-    """Return where matplotlib keeps its list of fonts: beside the user's caches, so that it is made once."""
-    import matplotlib as mpl
-
-    with contextlib.suppress(OSError):
-        return Path(mpl.get_cachedir())
-    return scratch / "matplotlib"
 
 
 @contextlib.contextmanager
@@ -72,6 +63,7 @@ def fresh_kernel() -> Iterator[Any]:
         manager = _manager(scratch)
         work = scratch / "work"
         work.mkdir()
+        (scratch / "matplotlibrc").write_text("", encoding="utf-8")  # nobody's own style
         try:
             yield manager, {"cwd": str(work), "env": kernel_environment(scratch)}
         finally:

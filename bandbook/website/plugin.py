@@ -18,6 +18,10 @@ log = logging.getLogger("mkdocs.plugins.bandbook")
 _PICTURE = re.compile(r'<img data-inline(?:="")? src="([^"]+)" alt="[^"]*"\s*/?>')
 
 
+def _inclusion(path: Path, tree: Path) -> Any:
+    return InclusionLevel.NOT_IN_NAV if path.is_relative_to(tree / "cases") else InclusionLevel.UNDEFINED
+
+
 class BandbookOptions(Config):
     """The plugin's options; ``settings`` checks them."""
 
@@ -61,13 +65,13 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
             log.warning(message)
 
     def on_files(self, files: Files, config: Any) -> Files:
-        """Return the theme's files and those of the page tree; only top pages stand in the navigation."""
+        """Return the theme's files and those of the page tree; cases stay out of the navigation."""
         tree = self.tree if self.tree is not None else self._tree
         kept = [file for file in files if Path(file.src_dir or "") != Path(config.docs_dir)]
         ours = [
             File(
                 path.relative_to(tree).as_posix(), str(tree), config.site_dir, use_directory_urls=False,
-                inclusion=InclusionLevel.NOT_IN_NAV if path.is_relative_to(tree / "cases") else InclusionLevel.UNDEFINED,
+                inclusion=_inclusion(path, tree),
             )
             for path in sorted(tree.rglob("*"))
             if path.is_file()

@@ -16,7 +16,7 @@ def table() -> dict[str, tuple[set[str], set[str]]]:
     """Return part → (in-house parts, outside packages) as DEVELOPERS.md has them."""
     text = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
     rows = re.findall(r"^\| (\w+) \| ([\w ]*) ?\| ([\w ]*) ?\|$", text, flags=re.MULTILINE)
-    return {part: (set(inside.split()), set(outside.split())) for part, inside, outside in rows}
+    return {part: (set(inside.split()), set(outside.split())) for part, inside, outside in rows if part != "part"}
 
 
 def part_of(path: Path) -> str:
