@@ -93,7 +93,7 @@ def _names(study: Mapping[str, Any], model: Model) -> list[Problem]:
 def _changes(study: Mapping[str, Any], model: Model) -> list[Problem]:
     problems = []
     for row, change in enumerate(study["changes"]):
-        is_site = change["site"] is not None and (change["alpha"] is not None or change["remove"])
+        is_site = change["site"] is not None and (change["alpha"] is not None or bool(change["remove"]))
         is_bond = None not in (change["from"], change["to"], change["beta"])
         if is_site == is_bond:
             allowed = "site with alpha or remove = true; or from, to and beta"

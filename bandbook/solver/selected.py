@@ -4,6 +4,7 @@ No dense matrix is made. The count of levels below an energy σ is the number of
 (Sylvester's law of inertia); two counts prove that the levels found between two energies are all there are.
 """
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
@@ -25,6 +26,8 @@ MOST_LEVELS: Final = 400
 TRIALS: Final = 8
 #: Levels by which a window may begin or end too far out.
 SLACK: Final = 8
+#: Rounds in which the levels of a window are looked for: at least the largest degeneracy.
+ROUNDS: Final = 12
 #: Part of the spectrum's width by which a shift is moved then.
 NUDGE: Final = 1.37e-9
 
@@ -182,39 +185,65 @@ def _is_accurate(matrix: "csc_array", factors: "SuperLU") -> bool:
 def _between(
     spectrum: Spectrum, *, low: float, high: float, wanted: int
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Return all levels between two energies; the counts say how many there must be."""
-    from scipy.sparse.linalg import ArpackError, LinearOperator, eigsh
+    """Return all levels between two energies; the counts say how many there must be.
 
-    factors, _, middle = spectrum.factor((low + high) / 2)
-    inverse = LinearOperator((spectrum.size,) * 2, matvec=factors.solve, dtype=np.float64)
-    begin = np.cos(np.arange(spectrum.size) ** 1.5) + 0.1
-    for trial in (1, 2, 4):
-        try:
-            energy, vectors = eigsh(
-                spectrum.H,
-                k=min(wanted + trial, spectrum.size - 1),
-                M=spectrum.S,
-                sigma=middle,
-                OPinv=inverse,
-                v0=begin,
-                ncv=min(spectrum.size, trial * (2 * wanted + 20)),
-            )
-        except ArpackError:
-            continue
-        order = np.argsort(energy)
-        inside = order[(energy[order] > low) & (energy[order] < high)]
-        if len(inside) == wanted:
-            return energy[inside], _orthonormal(vectors[:, inside], spectrum.S)
-    raise PhysicsError(
-        f"{wanted} levels lie between {low:.6g} and {high:.6g} eV but not all of them could be found; "
-        "the count is the proof; take fewer cells"
-    )
+    A Krylov space holds one vector of each degenerate level, so what a round finds is taken out and the next looks for
+    the rest, until the count is reached.
+    """
+    # not the middle: in an alternant that is where a cluster of levels lies, and a shift on a level spoils the others
+    factors, _, shift = spectrum.factor(low + 0.43 * (high - low))
+    found = np.zeros((spectrum.size, 0))
+    for _ in range(ROUNDS):
+        missing = wanted - found.shape[1]
+        energy, vectors = _nearest(spectrum, factors, found, shift=shift, n=math.ceil(1.2 * missing) + 3)
+        found = np.column_stack([found, vectors[:, (energy > low) & (energy < high)]])
+        if found.shape[1] >= wanted:
+            break
+    energy, found = _ritz(spectrum, found)
+    if len(energy) != wanted:
+        raise PhysicsError(
+            f"{wanted} levels lie between {low:.6g} and {high:.6g} eV but {len(energy)} were found; "
+            "the count is the proof; take fewer cells"
+        )
+    return energy, found
 
 
-def _orthonormal(vectors: NDArray[np.float64], S: "csr_array | None") -> NDArray[np.float64]:
-    """Return the vectors made orthonormal (S-orthonormal) to the last bits, in order."""
-    gram = vectors.T @ (vectors if S is None else S @ vectors)
-    return np.linalg.solve(np.linalg.cholesky(gram), vectors.T).T
+def _nearest(
+    spectrum: Spectrum, factors: "SuperLU", found: NDArray[np.float64], *, shift: float, n: int
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return levels near a shift, S-orthogonal to those found; one of each degenerate level at least."""
+    from scipy.sparse.linalg import ArpackNoConvergence, LinearOperator, eigsh
+
+    dual = found if spectrum.S is None else np.asarray(spectrum.S @ found)
+
+    def apart(right: NDArray[np.float64]) -> NDArray[np.float64]:
+        solved: NDArray[np.float64] = factors.solve(right)
+        return solved - found @ (dual.T @ solved)
+
+    size = min(n, spectrum.size - found.shape[1] - 1)
+    begin = np.cos(np.arange(spectrum.size) ** 1.5 + found.shape[1]) + 0.1
+    try:
+        energy, vectors = eigsh(
+            spectrum.H,
+            k=size,
+            M=spectrum.S,
+            sigma=shift,
+            OPinv=LinearOperator((spectrum.size,) * 2, matvec=apart, dtype=np.float64),
+            v0=begin - found @ (dual.T @ begin),
+            ncv=min(spectrum.size, 2 * size + 20),
+        )
+    except ArpackNoConvergence as stopped:
+        energy, vectors = stopped.eigenvalues, stopped.eigenvectors
+    return energy, vectors
+
+
+def _ritz(spectrum: Spectrum, vectors: NDArray[np.float64]) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return levels and S-orthonormal orbitals of H and S within the space of the vectors, ascending."""
+    from scipy.linalg import eigh
+
+    dual = vectors if spectrum.S is None else spectrum.S @ vectors
+    energy, turn = eigh(vectors.T @ (spectrum.H @ vectors), vectors.T @ dual)
+    return energy, vectors @ turn
 
 
 def spectrum_bounds(piece: Piece) -> tuple[float, float]:

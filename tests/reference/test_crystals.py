@@ -110,12 +110,10 @@ def test_6_32_polyacene_bands() -> None:
     bands = solve_bands(lattices.polyacene(beta=-1.0))
     root = np.sqrt(9 + 8 * np.cos(np.pi * bands.path.k[:, 0]))
     expected = np.sort(np.stack([(1 + root) / 2, (1 - root) / 2, (-1 + root) / 2, (-1 - root) / 2]), axis=0)
-    assert bands.energies.T == pytest.approx(expected, abs=1e-10)
+    assert pytest.approx(expected, abs=1e-10) == bands.energies.T
 
 
-@pytest.mark.parametrize(
-    ("n", "homo"), list(enumerate([1, 0.61803, 0.41421, 0.29496, 0.21969, 0.16937], start=1))
-)
+@pytest.mark.parametrize(("n", "homo"), list(enumerate([1, 0.61803, 0.41421, 0.29496, 0.21969, 0.16937], start=1)))
 def test_6_33_acenes(n: int, homo: float) -> None:
     """Coulson 1948, memory."""
     piece = cut_piece(lattices.polyacene(beta=-1.0), cells=n, add=["A1", "B1"])
