@@ -1,4 +1,4 @@
-"""The built demonstration book in a browser: from disk and over http below a prefix, with no request to another host."""
+"""A built book in a browser: from disk and over http below a prefix, with no request to another host."""
 
 import functools
 import http.server
@@ -6,7 +6,7 @@ import shutil
 import subprocess
 import sys
 import threading
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import pytest
@@ -26,8 +26,8 @@ class Quiet(http.server.SimpleHTTPRequestHandler):
 
 
 @pytest.fixture
-def site(make_book: "object", tmp_path: Path) -> Path:
-    root = make_book()  # type: ignore[operator]
+def site(make_book: Callable[..., Path], tmp_path: Path) -> Path:
+    root = make_book()
     command = [sys.executable, "-c", "from bandbook.cli import main; main()", "bind"]
     subprocess.run(command, cwd=root, check=True, capture_output=True, timeout=300)
     target = tmp_path / "served/below/a/prefix"
@@ -53,8 +53,8 @@ def test_pages_open_and_ask_no_other_host(site: Path, address: str) -> None:
         browser = play.chromium.launch(executable_path=CHROMIUM, args=FLAGS)
         for base in (address, site.as_uri() + "/"):
             page = browser.new_page(viewport={"width": 360, "height": 900})
-            page.on("console", lambda message: message.type == "error" and found.append(message.text))
-            page.on("request", lambda request: found.append(request.url) if _is_foreign(request.url) else None)
+            page.on("console", lambda message: found.extend([message.text] if message.type == "error" else []))
+            page.on("request", lambda request: found.extend([request.url] if _is_foreign(request.url) else []))
             for name in PAGES:
                 page.goto(base + name, wait_until="load")
                 wide = page.evaluate("document.documentElement.scrollWidth - document.documentElement.clientWidth")
