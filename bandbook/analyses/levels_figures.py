@@ -90,7 +90,7 @@ def _on_bands(asked: Asked, result: "LevelsResult") -> Figure:
     words = f"{len(placed)} levels on the bands of the infinite system at k = {ks} π/a"
     words += f"; {len(gap)} gap levels at the left margin." if gap else "; no gap level."
     nodes = ""
-    if result.nodes and placed:
+    if result.nodes and placed and asked.model.n_sites == 1:
         labels = ", ".join(typeset(label, 3) for label in result.nodes[:6]) + (", …" if len(result.nodes) > 6 else "")
         nodes = f" The node labels (crosses; {labels} of π/spacing) count sign changes: no k, they miss the band."
     signs = "Filled: occupied, ring: empty, square: gap level."

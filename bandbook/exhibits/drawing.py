@@ -58,6 +58,7 @@ STYLE: Final[dict[str, Any]] = {
     "path.simplify": False,
 }
 WIDTH: Final = 6.4
+_NUMBER: Final = re.compile(r"-?\d+\.\d{3,}(?:e-?\d+)?")
 
 
 @contextmanager
@@ -121,7 +122,7 @@ def finished(svg: str, name: str, alt: str) -> str:
     svg = re.sub(r"<metadata>.*?</metadata>", "", svg, flags=re.DOTALL)
     for sentinel, prop, light in COLOURS.values():
         svg = re.sub(sentinel, f"var({prop}, {light})", svg, flags=re.IGNORECASE)
-    svg = re.sub(r"-?\d+\.\d{3,}(?:e-?\d+)?", _short, svg)
+    svg = re.sub(r'"[^"]*"', lambda quoted: _NUMBER.sub(_short, quoted[0]), svg)
     svg = re.sub(r'\bid="([^"]+)"', rf'id="{name}-\1"', svg)
     svg = re.sub(r'(href="#|url\(#)([^")]+)', rf"\1{name}-\2", svg)
     svg = re.sub(r"font: ([\d.]+)px 'DejaVu Sans'[^;\"]*", r"font: \1px var(--bb-font, sans-serif)", svg)

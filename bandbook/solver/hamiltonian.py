@@ -32,7 +32,7 @@ def bloch(model: Model, k: Real) -> tuple[Complex, Complex | None]:
     >>> bloch(chain, np.array([[0.0], [1.0]]))[0].real.ravel().tolist()
     [-2.0, 2.0]
     """
-    k = np.asarray(k, dtype=np.float64).reshape(-1, model.dimension)
+    k = np.asarray(k, dtype=np.float64).reshape(len(k), model.dimension)
     h = np.zeros((len(k), model.n_sites, model.n_sites), dtype=np.complex128)
     h[:, range(model.n_sites), range(model.n_sites)] = [site.alpha for site in model.sites]
     s = np.zeros_like(h) if model.has_overlap else None
@@ -61,7 +61,7 @@ def bloch_derivative(model: Model, k: Real, axis: int) -> tuple[Complex, Complex
         k: Wave vectors, π/a, ``(n_k, dimension)``.
         axis: The lattice vector, from 0.
     """
-    k = np.asarray(k, dtype=np.float64).reshape(-1, model.dimension)
+    k = np.asarray(k, dtype=np.float64).reshape(len(k), model.dimension)
     h = np.zeros((len(k), model.n_sites, model.n_sites), dtype=np.complex128)
     s = np.zeros_like(h) if model.has_overlap else None
     for coupling in model.couplings:
@@ -85,7 +85,7 @@ def band_energies(model: Model, k: Real) -> Real:
     >>> band_energies(chain, np.array([[1.0]])).tolist()
     [[2.0]]
     """
-    k = np.asarray(k, dtype=np.float64).reshape(-1, model.dimension)
+    k = np.asarray(k, dtype=np.float64).reshape(len(k), model.dimension)
     size = max(1, BATCH_NUMBERS // model.n_sites**2)
     parts = [_energies(model, k[first : first + size]) for first in range(0, len(k), size)]
     return np.concatenate(parts) if parts else np.zeros((0, model.n_sites))
@@ -116,7 +116,7 @@ def orthogonalised(h: Complex, s: Complex, k: Real) -> tuple[Complex, Complex]:
 
 def band_states(model: Model, k: Real) -> tuple[Real, Complex]:
     """Return E_b(k) ``(n_k, band)`` and the states c with c†Sc = 1, ``(n_k, site, band)``."""
-    k = np.asarray(k, dtype=np.float64).reshape(-1, model.dimension)
+    k = np.asarray(k, dtype=np.float64).reshape(len(k), model.dimension)
     h, s = bloch(model, k)
     if s is None:
         energies, vectors = np.linalg.eigh(h)
