@@ -4,7 +4,6 @@ No dense matrix is made. The count of levels below an energy σ is the number of
 (Sylvester's law of inertia); two counts prove that the levels found between two energies are all there are.
 """
 
-import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
@@ -26,10 +25,17 @@ MOST_LEVELS: Final = 400
 TRIALS: Final = 8
 #: Levels by which a window may begin or end too far out.
 SLACK: Final = 8
+#: Levels that are looked for at a time.
+AT_A_TIME: Final = 16
+#: Halvings by which the empty margins of a slice are cut off.
+HALVINGS: Final = 14
 #: Rounds in which the levels of a window are looked for: at least the largest degeneracy.
 ROUNDS: Final = 12
 #: Part of the spectrum's width by which a shift is moved then.
 NUDGE: Final = 1.37e-9
+
+#: An energy, eV, and the number of levels below it.
+Count = tuple[float, int]
 
 
 def has_tridiagonal(piece: Piece) -> bool:
@@ -94,17 +100,16 @@ def window_levels(piece: Piece, *, first: int, last: int) -> tuple[NDArray[np.fl
     _check_overlap(S)
     bounds = spectrum_bounds(piece)
     spectrum = Spectrum(H, S, piece.n_sites, *bounds)
-    known = [(bounds[0], 0), (bounds[1], piece.n_sites)]
-    low, n_low = spectrum.shift(first, known, side=-1)
-    high, n_high = spectrum.shift(last, known, side=1)
-    wanted = n_high - n_low
+    known: list[Count] = [(bounds[0], 0), (bounds[1], piece.n_sites)]
+    low, high = spectrum.shift(first, known, side=-1), spectrum.shift(last, known, side=1)
+    wanted = high[1] - low[1]
     if wanted > MOST_LEVELS:
         raise PhysicsError(
-            f"{wanted} levels of the piece lie between {low:.6g} and {high:.6g} eV around the Fermi energy; at most "
-            f"{MOST_LEVELS} are computed in a piece of this size; take fewer cells"
+            f"{wanted} levels of the piece lie between {low[0]:.6g} and {high[0]:.6g} eV around the Fermi energy; at "
+            f"most {MOST_LEVELS} are computed in a piece of this size; take fewer cells"
         )
-    energy, vectors = _between(spectrum, low=low, high=high, wanted=wanted)
-    return energy, vectors, n_low
+    energy, vectors = _ritz(spectrum, _between(spectrum, known, low=low, high=high))
+    return energy, vectors, low[1]
 
 
 @dataclass(frozen=True)
@@ -146,13 +151,13 @@ class Spectrum:
             "take fewer cells"
         )
 
-    def shift(self, wanted: int, known: list[tuple[float, int]], *, side: int) -> tuple[float, int]:
+    def shift(self, wanted: int, known: list[Count], *, side: int, slack: int = SLACK) -> Count:
         """Return an energy with about ``wanted`` levels below it, and that number.
 
-        With ``side`` −1 it is at most ``wanted``, with +1 at least, and no more than a few off unless levels coincide.
+        With ``side`` −1 it is at most ``wanted``, with +1 at least, no more than ``slack`` off unless levels coincide.
         Counts made on the way are added to ``known``, which starts with the bounds of the spectrum.
         """
-        least, most = sorted((wanted, wanted + side * SLACK))
+        least, most = sorted((wanted, wanted + side * slack))
         halve = True
         while True:
             fitting = [pair for pair in known if least <= pair[1] <= most]
@@ -182,30 +187,57 @@ def _is_accurate(matrix: "csc_array", factors: "SuperLU") -> bool:
     return bool(np.isfinite(scale)) and float(np.abs(matrix @ found - right).max()) <= 1e-8 * scale
 
 
-def _between(
-    spectrum: Spectrum, *, low: float, high: float, wanted: int
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Return all levels between two energies; the counts say how many there must be.
+def _between(spectrum: Spectrum, known: list[Count], *, low: Count, high: Count) -> NDArray[np.float64]:
+    """Return the orbitals of all levels between two energies, few of them at a time."""
+    wanted = high[1] - low[1]
+    if wanted > AT_A_TIME:
+        middle = spectrum.shift(low[1] + wanted // 2, known, side=1, slack=wanted // 4)
+        if low[1] < middle[1] < high[1]:
+            parts = (_between(spectrum, known, low=one, high=two) for one, two in ((low, middle), (middle, high)))
+            return np.concatenate(list(parts), axis=1)
+    return _slice(spectrum, low=low, high=high) if wanted else np.zeros((spectrum.size, 0))
+
+
+def _slice(spectrum: Spectrum, *, low: Count, high: Count) -> NDArray[np.float64]:
+    """Return the orbitals of the levels between two energies; the counts say how many there must be.
 
     A Krylov space holds one vector of each degenerate level, so what a round finds is taken out and the next looks for
     the rest, until the count is reached.
     """
-    # not the middle: in an alternant that is where a cluster of levels lies, and a shift on a level spoils the others
-    factors, _, shift = spectrum.factor(low + 0.43 * (high - low))
+    wanted = high[1] - low[1]
+    factors, shift, low, high = _narrowed(spectrum, low, high)
     found = np.zeros((spectrum.size, 0))
+    inside = np.zeros(0, dtype=np.bool_)
     for _ in range(ROUNDS):
-        missing = wanted - found.shape[1]
-        energy, vectors = _nearest(spectrum, factors, found, shift=shift, n=math.ceil(1.2 * missing) + 3)
-        found = np.column_stack([found, vectors[:, (energy > low) & (energy < high)]])
-        if found.shape[1] >= wanted:
+        missing = wanted - int(inside.sum())
+        energy, vectors = _nearest(spectrum, factors, found, shift=shift, n=missing + 4)
+        found = np.column_stack([found, vectors])
+        inside = np.concatenate([inside, (energy > low[0]) & (energy < high[0])])
+        if inside.sum() >= wanted:
             break
-    energy, found = _ritz(spectrum, found)
-    if len(energy) != wanted:
+    if inside.sum() != wanted:
         raise PhysicsError(
-            f"{wanted} levels lie between {low:.6g} and {high:.6g} eV but {len(energy)} were found; "
+            f"{wanted} levels lie between {low[0]:.6g} and {high[0]:.6g} eV but {inside.sum()} were found; "
             "the count is the proof; take fewer cells"
         )
-    return energy, found
+    return found[:, inside]
+
+
+def _narrowed(spectrum: Spectrum, low: Count, high: Count) -> tuple["SuperLU", float, Count, Count]:
+    """Return factors at a shift among the levels of a slice, the shift, and the slice without its empty margins.
+
+    Levels that are packed at one end, seen from far away, are told apart slowly.
+    """
+    for _ in range(HALVINGS):
+        # not quite the middle: in an alternant a level may lie there, and a shift on a level spoils the others
+        factors, count, shift = spectrum.factor(low[0] + 0.493 * (high[0] - low[0]))
+        if count == low[1]:
+            low = shift, count
+        elif count == high[1]:
+            high = shift, count
+        else:
+            break
+    return factors, shift, low, high
 
 
 def _nearest(
