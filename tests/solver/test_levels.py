@@ -267,6 +267,19 @@ def test_selected_levels_are_those_of_the_full_solution(
     assert some.participation[inner] == pytest.approx(full.participation[part][inner], rel=1e-7)
 
 
+def test_degenerate_levels_inside_a_gap_are_all_found(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Two alternating chains that do not touch: four end states at 0, and packed band edges far from them."""
+    bonds = tuple(Coupling(2 * leg, 2 * leg + 1, -1.0, (0,)) for leg in (0, 1))
+    bonds += tuple(Coupling(2 * leg + 1, 2 * leg, -1.4, (1,)) for leg in (0, 1))
+    piece = cut_piece(Model(tuple(Site(name) for name in "ABCD"), bonds, dimension=1), cells=150)
+    full = solve_levels(piece)
+    monkeypatch.setattr(levels, "MOST_IN_FULL", 100)
+    some = solve_levels(piece)
+    assert some.energy == pytest.approx(full.energy[some.first : some.first + 40], abs=1e-12)
+    assert some.degeneracy[18:22].tolist() == [4] * 4
+    assert some.is_open_shell == full.is_open_shell
+
+
 def test_a_wide_piece_is_never_dense(monkeypatch: pytest.MonkeyPatch) -> None:
     """[2000]acene, levels ½(±1 ± √(9 + 8 cos(jπ/(n+1)))) and ±1 (Coulson 1948)."""
     monkeypatch.setattr(Piece, "matrices", None)
