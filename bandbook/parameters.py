@@ -7,6 +7,7 @@ against it and returns the checked parameters, plain JSON, together with every :
 import difflib
 import math
 import re
+import unicodedata
 from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, Final
@@ -21,6 +22,8 @@ REQUIRED: Final = "«required»"
 NAME: Final = re.compile(r"[A-Za-z][A-Za-z0-9_]*\Z")
 #: Sites of a pieces and lengths of a series: the contract's largest model.
 MOST_CELLS: Final = 10**7
+#: Whole numbers up to here are exact as floats and in JSON.
+MOST_WHOLE: Final = 2**53
 
 Checked = tuple[Any, list[Problem]]
 
@@ -161,7 +164,7 @@ def shown(value: object) -> str:
         return "a table"
     if isinstance(value, list):
         return f"a list of {len(value)}"
-    return str(value)
+    return "a whole number of very many digits" if isinstance(value, int) and abs(value) > MOST_WHOLE else str(value)
 
 
 def _remedy(value: object) -> str:
@@ -180,11 +183,19 @@ def _is_numeral(text: str) -> bool:
 
 
 def _number(field: Field, value: object) -> Checked:
-    if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
+    if isinstance(value, bool) or not isinstance(value, int | float) or not _is_finite(value):
         return _wrong(field, value)
     if not _in_range(field, value):
         return _wrong(field, value)
     return float(value) + 0.0, []
+
+
+def _is_finite(value: float) -> bool:
+    """Return whether a number is finite as a float; a whole number of TOML may be larger than any."""
+    try:
+        return math.isfinite(value)
+    except OverflowError:
+        return False
 
 
 def _in_range(field: Field, value: float) -> bool:
@@ -202,17 +213,42 @@ def _integer(field: Field, value: object) -> Checked:
         value = int(value)
     if isinstance(value, bool) or not isinstance(value, int) or not _in_range(field, value):
         return _wrong(field, value)
+    if abs(value) > MOST_WHOLE:
+        return _wrong(field, value, "write a smaller number")
     return value, []
 
 
 def _text(field: Field, value: object) -> Checked:
-    return (value, []) if isinstance(value, str) and value.strip() else _wrong(field, value)
+    if isinstance(value, str):
+        return (value, []) if value.strip() else _wrong(field, value, "write something, or remove the key")
+    return _wrong(field, value, "" if isinstance(value, list | Mapping) else "put it in quotes")
 
 
 def _name(field: Field, value: object) -> Checked:
     if isinstance(value, str) and NAME.match(value):
         return value, []
-    return _wrong(field, value, "begin with a letter and go on with letters, digits and _")
+    return _wrong(field, value, _name_remedy(value))
+
+
+def _name_remedy(value: object) -> str:
+    plain = plain_name(value) if isinstance(value, str) else ""
+    if isinstance(value, str) and not value.isascii():
+        return "names keep to the letters a to z, digits and _" + (f'; write "{plain}"' if plain else "")
+    return f'write "{plain}"' if plain else "begin with a letter and go on with letters, digits and _"
+
+
+def plain_name(text: str) -> str:
+    """Return the allowed name that is nearest to a text, or nothing.
+
+    >>> plain_name("β short"), plain_name("Größe"), plain_name("1")
+    ('beta_short', 'Grosse', '')
+    """
+    signs = []
+    for sign in unicodedata.normalize("NFKD", text.strip()[:80].replace("ß", "ss")):
+        greek = re.fullmatch(r"GREEK (?:SMALL|CAPITAL) LETTER (\w+)", unicodedata.name(sign, ""))
+        signs.append(greek[1].lower() if greek else "_" if sign in " -." else sign)
+    name = re.sub(r"[^A-Za-z0-9_]", "", "".join(signs))
+    return name if NAME.match(name) else ""
 
 
 def _flag(field: Field, value: object) -> Checked:
@@ -298,6 +334,7 @@ KINDS: Final[Mapping[str, Callable[[Field, Any], Checked]]] = {
     "choice": _choice,
     "choices": _list_of(_choice),
     "names": _list_of(_name),
+    "texts": _list_of(_text),
     "integers": _list_of(_integer),
     "numbers": _list_of(_number),
     "vector": _vector,
@@ -318,6 +355,7 @@ _NOUNS: Final[Mapping[str, str]] = {
     "choice": "one of",
     "choices": "a list of words, each one of",
     "names": "a list of names in quotes",
+    "texts": "a list of texts",
     "integers": "a list of whole numbers",
     "numbers": "a list of finite numbers",
     "vector": "three numbers",

@@ -1,16 +1,18 @@
 """From a Case to checked parameters, all of its author's mistakes at once; nothing is executed."""
 
-from collections.abc import Collection, Mapping
-from dataclasses import dataclass, field
+import math
+from collections.abc import Collection, Iterator, Mapping
+from dataclasses import dataclass, field, replace
 from typing import Any, Protocol
 
 from bandbook.cases.book import Book
 from bandbook.cases.embed import embedded
 from bandbook.cases.fences import Block
-from bandbook.cases.read import Case
-from bandbook.cases.references import QuantityPattern, Reference, read_references
+from bandbook.cases.read import ID, Case
+from bandbook.cases.references import Promised, QuantityPattern, Reference, read_references
 from bandbook.cases.resolve import ParameterUse, resolve
-from bandbook.cases.workings import bound_names
+from bandbook.cases.toml_lines import Key
+from bandbook.cases.workings import ANY, bound_names
 from bandbook.errors import Problem
 from bandbook.parameters import NAME, near
 
@@ -60,7 +62,12 @@ class CheckedCase:
 
 @dataclass
 class _Desk:
-    """What is gathered while a case is checked."""
+    """What is gathered while a case is checked.
+
+    Attributes:
+        builders: Name bound by a workings block → line of the block that binds it first.
+        unnamed: Studies whose name is not known, because their block is wrong.
+    """
 
     case: Case
     book: Book
@@ -73,36 +80,45 @@ class _Desk:
     workings: list[str] = field(default_factory=list)
     steps: list[list[Any]] = field(default_factory=list)
     blocks: dict[str, int] = field(default_factory=dict)
+    builders: dict[str, int] = field(default_factory=dict)
+    unnamed: int = 0
 
-    def note(self, block: Block, problems: list[Problem]) -> None:
+    def note(self, block: Block, *problems: Problem) -> None:
         """Place problems of a block at their lines."""
         self.problems += [
             problem if problem.line else problem.at(self.case.file, block.line_of(problem.key)) for problem in problems
         ]
 
-    def resolved(self, block: Block) -> dict[str, Any]:
-        """Return the block's table with references to parameter sets replaced."""
+    def resolved(self, block: Block) -> tuple[dict[str, Any], set[Key]]:
+        """Return the block's table with references to parameter sets replaced, and the keys where that failed."""
         table, uses, problems = resolve(dict(block.table), self.book.sets, block=block.line)
         self.uses += uses
-        self.note(block, problems)
-        return dict(table)
+        self.note(block, *problems)
+        return dict(table), {problem.key for problem in problems}
+
+    def kept(self, block: Block, result: tuple[Checked | None, list[Problem]], failed: set[Key]) -> Checked | None:
+        """Note the problems of a checked block that do not follow from a failed reference; return what is usable."""
+        checked, problems = result
+        own = [problem for problem in problems if problem.key not in failed]
+        own += [] if own or checked is None else list(_not_plain(checked, ()))
+        self.note(block, *own)
+        return None if own or failed else checked
 
 
 def check_case(case: Case, book: Book, vocabulary: Vocabulary) -> CheckedCase:
     """Check a case: systems, then studies and workings in file order, then reference values and front matter."""
     desk = _Desk(case, book, vocabulary)
+    _check_workings(desk)
     _check_systems(desk)
     _check_steps(desk)
-    references, recorded = _check_references(desk)
+    references = _check_references(desk, "reference")
+    recorded = _check_references(desk, "recorded")
     files = _check_front(desk)
-    if not case.of_kind("study") and not case.problems:
-        desk.problems.append(Problem("there is no study", "one or more", "add a ```toml study block").at(case.file, 1))
+    _check_presence(desk)
     problems = {(p.line, str(p)): p.at(case.file, p.line or 1) for p in (*case.problems, *desk.problems)}
     ordered = tuple(problems[key] for key in sorted(problems))
     parameters = None if ordered else _parameters(desk, files)
-    return CheckedCase(
-        case, parameters, tuple(references), tuple(recorded), tuple(desk.uses), ordered, dict(desk.blocks)
-    )
+    return CheckedCase(case, parameters, references, recorded, tuple(desk.uses), ordered, dict(desk.blocks))
 
 
 def _parameters(desk: _Desk, files: dict[str, str]) -> Checked:
@@ -116,41 +132,58 @@ def _parameters(desk: _Desk, files: dict[str, str]) -> Checked:
     }
 
 
+def _check_presence(desk: _Desk) -> None:
+    """Note a missing system or study, unless the file could not be read as a case at all."""
+    if not desk.case.parts and desk.case.problems:
+        return
+    for kind, what in (("system", "one, or several with names"), ("study", "one or more")):
+        if not desk.case.of_kind(kind):
+            problem = Problem(f"there is no {kind}", what, f"add a ```toml {kind} block")
+            desk.problems.append(problem.at(desk.case.file, 1))
+
+
+def _check_workings(desk: _Desk) -> None:
+    """Note the mistakes of workings and the names they bind."""
+    for block in desk.case.of_kind("workings"):
+        names, problems = ({ANY}, []) if block.is_broken else bound_names(block)
+        desk.note(block, *problems)
+        for name in {ANY} if problems else names:
+            desk.builders.setdefault(name, block.line)
+
+
 def _check_systems(desk: _Desk) -> None:
     blocks = desk.case.of_kind("system")
     for block in blocks:
-        name = _name_of(block, default="system")
-        if name is None:
-            desk.note(block, [_bad_name(block)])
-            continue
-        if len(blocks) > 1 and block.name is None:
+        name = _name_of(block, "system")
+        if len(blocks) > 1 and "name" not in block.table and not block.is_broken:
             remedy = 'add name = "…" to each'
-            desk.note(block, [Problem("a system without a name", "with several systems each has one", remedy)])
+            desk.note(block, Problem("a system without a name", "with several systems each has one", remedy))
         elif name in desk.systems:
-            desk.note(block, [_twice("system", name)])
-        if block.lines or not _is_broken(desk, block):
-            checked, problems = desk.vocabulary.check_system(desk.resolved(block))
-            desk.note(block, problems)
-            desk.systems.setdefault(name, checked)
-    if not blocks and not desk.case.problems:
-        remedy = "add a ```toml system block"
-        desk.problems.append(Problem("there is no system", "one, or several with names", remedy).at(desk.case.file, 1))
+            desk.note(block, _twice("system", name))
+        checked = None
+        if not block.is_broken:
+            table, failed = desk.resolved(block)
+            checked = desk.kept(block, desk.vocabulary.check_system(table), failed)
+            _check_builder(desk, block, checked)
+        desk.systems.setdefault(name, checked)
 
 
-def _is_broken(desk: _Desk, block: Block) -> bool:
-    """Return whether the block is no TOML, which the reader has said already."""
-    end = block.line + block.source.count("\n") + 1
-    return any(block.line <= problem.line <= end for problem in desk.case.problems)
+def _check_builder(desk: _Desk, block: Block, checked: Checked | None) -> None:
+    """Note a function that no workings block of the case binds."""
+    function = checked.get("built_by") if checked else None
+    if function is None or function in desk.builders or ANY in desk.builders:
+        return
+    remedy = near(function, desk.builders) or f"define {function} in a python workings block above the first study"
+    desk.note(
+        block,
+        Problem(f'no workings block defines "{function}"', "a function of a workings block", remedy, ("built_by",)),
+    )
 
 
-def _name_of(block: Block, default: str) -> str | None:
+def _name_of(block: Block, default: str) -> str:
+    """Return the name that a block has; of a wrong one its default, and its own check says what is wrong."""
     name = block.table.get("name", default)
-    return name if isinstance(name, str) and NAME.match(name) else None
-
-
-def _bad_name(block: Block) -> Problem:
-    found = f"the name {block.table.get('name')!r}"
-    return Problem(found, "letters a to z, digits and _, a letter first", "choose another name", ("name",))
+    return name if isinstance(name, str) and NAME.match(name) else default
 
 
 def _twice(what: str, name: str) -> Problem:
@@ -160,77 +193,101 @@ def _twice(what: str, name: str) -> Problem:
 
 
 def _check_steps(desk: _Desk) -> None:
-    bound: set[str] = set()
     for block in desk.case.blocks:
         if block.kind == "workings":
-            names, problems = bound_names(block)
-            desk.note(block, problems)
-            bound |= names
             desk.steps.append(["workings", len(desk.workings)])
             desk.workings.append(block.source)
             desk.blocks[f"step-{len(desk.steps)}"] = block.line
-        elif block.kind == "study" and (block.lines or not _is_broken(desk, block)):
-            _check_study(desk, block, bound)
+        elif block.kind == "study":
+            _check_study(desk, block)
 
 
-def _check_study(desk: _Desk, block: Block, bound: set[str]) -> None:
+def _check_study(desk: _Desk, block: Block) -> None:
     question = block.table.get("question")
-    default = question if isinstance(question, str) and NAME.match(question) else "study"
-    name = _name_of(block, default=default)
-    if name is None or name == "workings":
-        desk.note(
-            block,
-            [
-                _bad_name(block)
-                if name is None
-                else Problem('the name "workings" is taken', "another", "rename it", ("name",))
-            ],
-        )
-        return
-    if name in desk.studies:
-        desk.note(block, [_twice("study", name)])
-    checked, problems = desk.vocabulary.check_study(desk.resolved(block), desk.systems)
-    problems += _builder_problems(desk, checked, bound)
-    desk.note(block, problems)
+    default = question if isinstance(question, str) and NAME.match(question) else ""
+    name = _name_of(block, default)
+    if not name or (block.is_broken and "name" not in block.table):
+        desk.unnamed += 1
+    if name == "workings":
+        remedy = "choose another name"
+        desk.note(block, Problem('the name "workings" is taken', "quantities of workings have it", remedy, ("name",)))
+    elif name and name in desk.studies:
+        desk.note(block, _twice("study", name))
+    checked = None
+    if not block.is_broken:
+        table, failed = desk.resolved(block)
+        checked = desk.kept(block, desk.vocabulary.check_study(table, desk.systems), failed)
+        _check_order(desk, block, checked)
     desk.studies.setdefault(name, checked)
-    desk.questions.setdefault(name, str(question))
+    desk.questions.setdefault(name, "" if block.is_broken else str(question))
     desk.steps.append(["study", name])
     desk.blocks.setdefault(name, block.line)
     desk.blocks[f"step-{len(desk.steps)}"] = block.line
 
 
-def _builder_problems(desk: _Desk, checked: Checked | None, bound: set[str]) -> list[Problem]:
+def _check_order(desk: _Desk, block: Block, checked: Checked | None) -> None:
+    """Note a study that stands above the workings that build its system."""
     system = desk.systems.get(checked["system"]) if checked else None
     function = system.get("built_by") if system else None
-    if function is None or function in bound:
-        return []
-    remedy = near(function, bound) or f"define {function} in a python workings block above this study"
-    found = f'the system is built by "{function}", which no workings block above defines'
-    return [Problem(found, "a function of an earlier workings block", remedy)]
+    line = min((desk.builders[name] for name in (function, ANY) if name in desk.builders), default=0)
+    if function is not None and line > block.line:
+        found = f'its system is built by "{function}", which is defined only in line {line}'
+        desk.note(
+            block, Problem(found, "a function of an earlier workings block", "move the workings above this study")
+        )
 
 
-def _check_references(desk: _Desk) -> tuple[list[Reference], list[Reference]]:
-    promised = {name: desk.vocabulary.quantity_names(question) for name, question in desk.questions.items()}
-    kept: dict[str, list[Reference]] = {"reference": [], "recorded": []}
-    for block in desk.case.blocks:
-        if block.kind in kept:
-            references, problems = read_references(block, desk.book, promised)
-            desk.note(block, problems)
-            seen = {reference.quantity for reference in kept[block.kind]}
-            twice = [reference for reference in references if reference.quantity in seen]
-            desk.note(block, [_twice("reference value", reference.quantity) for reference in twice])
-            kept[block.kind] += references
-    return kept["reference"], kept["recorded"]
+def _check_references(desk: _Desk, kind: str) -> tuple[Reference, ...]:
+    studies = {name: desk.vocabulary.quantity_names(question) for name, question in desk.questions.items() if name}
+    promised = Promised(studies, bool(desk.case.of_kind("workings")), desk.unnamed == 0)
+    kept: dict[str, Reference] = {}
+    for block in desk.case.of_kind(kind):
+        if block.is_broken:
+            continue
+        table, failed = desk.resolved(block)
+        references, problems = read_references(table, kind, book=desk.book, promised=promised)
+        desk.note(block, *(problem for problem in problems if problem.key not in failed))
+        for key, reference in references:
+            if reference.quantity in kept:
+                found = f'the quantity "{reference.quantity}" has a {kind} value already'
+                desk.note(block, Problem(found, "one value each", "remove one of the two", key))
+            kept.setdefault(reference.quantity, replace(reference, line=block.line_of(key)))
+    return tuple(kept.values())
 
 
 def _check_front(desk: _Desk) -> dict[str, str]:
     front = desk.case.front
     ids = [case.id for case in desk.book.cases]
-    for identity in front.see:
+    problems = []
+    for row, identity in enumerate(front.see):
         if identity not in ids:
             remedy = near(identity, ids) or "remove it"
-            problem = Problem(f'unknown case "{identity}"', "ids of cases of this book", remedy, ("see",))
-            desk.problems.append(problem.at(desk.case.file, front.lines.get("see", 1)))
-    files, problems = embedded(front.uses, desk.book)
-    desk.problems += [problem.at(desk.case.file, front.lines.get("uses", 1)) for problem in problems]
+            problems.append(Problem(f'unknown case "{identity}"', "ids of cases of this book", remedy, ("see", row)))
+    for row, identity in enumerate(front.was):
+        if not ID.match(identity):
+            allowed = "small letters a to z, digits, points and hyphens, / between folders"
+            problems.append(Problem(f'"{identity}" is no id', allowed, "write the former id", ("was", row)))
+    files, wrong = embedded(front.uses, desk.book)
+    for problem in (*problems, *wrong):
+        name, number = problem.key[:2]
+        line = front.line_of(str(name), number if isinstance(number, int) else -1)
+        desk.problems.append(problem.at(desk.case.file, line))
     return files
+
+
+def _not_plain(value: Any, key: Key) -> Iterator[Problem]:
+    """Yield what JSON has no form for: dates, and numbers that are not finite; only free tables let them through."""
+    if isinstance(value, Mapping):
+        for name, entry in value.items():
+            yield from _not_plain(entry, (*key, name))
+    elif isinstance(value, list | tuple):
+        for row, entry in enumerate(value):
+            yield from _not_plain(entry, (*key, row))
+    elif isinstance(value, float) and not math.isfinite(value):
+        yield Problem(f"found the number {value}", "finite numbers", "correct it", key)
+    elif isinstance(value, int) and abs(value) > 2**53:
+        yield Problem(
+            "found a whole number of very many digits", "whole numbers up to 2^53", "write a smaller one", key
+        )
+    elif value is not None and not isinstance(value, str | bool | int | float):
+        yield Problem(f"found the date or time {value}", "numbers and texts", "put it in quotes", key)

@@ -11,8 +11,8 @@ from bandbook.cases.toml_lines import read_toml
 from bandbook.errors import Problem
 
 ID: Final = re.compile(r"[a-z0-9][a-z0-9.-]*(?:/[a-z0-9][a-z0-9.-]*)*\Z")
-RESERVED: Final = frozenset({"index", "figures", "tables"})
-#: A case file is prose and numbers; anything larger is a mistake.
+RESERVED: Final = ("index", "figures", "tables", "index.md", "index.html", "record.json", "notebook.ipynb")
+#: A file of the book is prose and numbers; anything larger is a mistake.
 MOST_BYTES: Final = 5_000_000
 
 
@@ -68,44 +68,53 @@ def case_of(text: str, *, identity: str, file: str, problems: list[Problem] | No
         )
         return Case(identity, file, problems=tuple(problem.at(file, 1) for problem in found))
     front, rest, first, wrong = read_front(text)
-    parts, unclosed = split(rest, first)
-    found += [*wrong, *unclosed]
-    read: list[Prose | Block] = []
-    for part in parts:
-        if isinstance(part, Block) and part.kind != "workings":
-            table, lines, mistakes = read_toml(part.source, part.line)
-            found += mistakes
-            part = replace(part, table=table, lines=lines)  # noqa: PLW2901 - the block with what stands in it
-        read.append(part)
+    parts, misplaced = split(rest, first)
+    read = [_read_part(part) for part in parts]
+    found += [*wrong, *misplaced, *(problem for _, mistakes in read for problem in mistakes)]
     placed = sorted((problem.at(file, problem.line or 1) for problem in found), key=lambda problem: problem.line)
-    return Case(identity, file, front, tuple(read), tuple(placed))
+    return Case(identity, file, front, tuple(part for part, _ in read), tuple(placed))
+
+
+def _read_part(part: Prose | Block) -> tuple[Prose | Block, list[Problem]]:
+    """Return a block with what TOML reads in it; of one whose fence is wrong, that is the one mistake told."""
+    if isinstance(part, Prose) or part.kind == "workings":
+        return part, []
+    table, lines, mistakes = read_toml(part.source, part.line)
+    is_broken = part.is_broken or bool(mistakes)
+    return replace(part, table=table, lines=lines, is_broken=is_broken), [] if part.is_broken else mistakes
 
 
 def read_text(path: Path) -> tuple[str | None, list[Problem]]:
     """Read a text file of the book: UTF-8, with or without a byte order mark, any line ends."""
     try:
         if not path.is_file():
-            return None, [Problem("it is no file", "a text file", "remove it or put a file there").at("", 1)]
+            remedy = "remove it, or put a file there"
+            return None, [Problem("it is no file", "a text file of this name", remedy).at("", 1)]
         if path.stat().st_size > MOST_BYTES:
-            return None, [Problem("it is larger than 5 MB", "text", "put data into content/data").at("", 1)]
+            return None, [Problem("it is larger than 5 MB", "prose and numbers", "shorten it").at("", 1)]
         data = path.read_bytes()
-    except OSError as error:
-        return None, [Problem(f"it cannot be read: {error.strerror}", "a text file", "check its rights").at("", 1)]
+    except (OSError, ValueError) as error:
+        found = f"it cannot be read: {getattr(error, 'strerror', None) or error}"
+        return None, [Problem(found, "a text file that the command may read", "check its name and rights").at("", 1)]
     try:
         text = data.decode("utf-8-sig")
+        bad = data.index(0) if 0 in data else -1
     except UnicodeDecodeError as error:
-        line = data[: error.start].count(b"\n") + 1
-        found = f"byte {data[error.start]:#04x} is no UTF-8"
+        text, bad = "", data.startswith(b"\xef\xbb\xbf") * 3 + error.start
+    if bad >= 0:
+        found = f"the byte {data[bad]:#04x} is no UTF-8 text"
+        line = len(re.findall(rb"\r\n|\r|\n", data[:bad])) + 1
         return None, [Problem(found, "text files are UTF-8", "save the file as UTF-8").at("", line)]
     return text.replace("\r\n", "\n").replace("\r", "\n"), []
 
 
 def _identity(identity: str) -> list[Problem]:
-    problems = []
     if not ID.match(identity):
-        allowed = "small letters, digits, points and hyphens, / between folders"
-        problems.append(Problem(f'the file name gives the id "{identity}"', allowed, "rename the file"))
-    if RESERVED & set(identity.split("/")):
-        allowed = "index, figures and tables are names of the book's own"
-        problems.append(Problem(f'the id "{identity}" is reserved', allowed, "rename the file"))
-    return problems
+        found = f'the file name gives the id "{identity}"'
+        allowed = "small letters a to z, digits, points and hyphens, / between folders"
+        return [Problem(found, allowed, "rename the file")]
+    taken = [part for part in identity.split("/") if part in RESERVED]
+    if taken:
+        allowed = "these names are the book's own: " + ", ".join(RESERVED)
+        return [Problem(f'the id "{identity}" uses the name "{taken[0]}"', allowed, "rename the file or folder")]
+    return []

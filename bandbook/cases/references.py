@@ -2,20 +2,21 @@
 
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass
-from typing import Any, Protocol
+from typing import Any, Final, Protocol
 
 from bandbook.cases.book import Book, source_problem
-from bandbook.cases.fences import Block
+from bandbook.cases.toml_lines import Key
 from bandbook.errors import Problem
 from bandbook.parameters import Field, check, near
 
-_FIELDS = (
+_FIELDS: Final = (
     Field("value", "number", "the value"),
     Field("within", "number", "how far the found value may be from it", least=0.0),
     Field("unit", "choice", 'unit, "beta" to compare in units of β', default="", choices=("beta",)),
     Field("source", "text", "key of sources.bib", default=""),
     Field("note", "text", "where it comes from", default=""),
 )
+_FORM: Final = 'a quantity is "<study>.<quantity>"'
 
 
 class QuantityPattern(Protocol):
@@ -44,49 +45,63 @@ class Reference:
     line: int = 0
 
 
+@dataclass(frozen=True)
+class Promised:
+    """What a case can be asked for.
+
+    Attributes:
+        studies: Study → the quantities that its question promises; none where the question is unknown.
+        has_workings: Whether the case has workings, which may report any quantity.
+        is_whole: Whether every study is known by its name; otherwise an unknown one may be a study with mistakes.
+    """
+
+    studies: Mapping[str, Collection[QuantityPattern]]
+    has_workings: bool = True
+    is_whole: bool = True
+
+
 def read_references(
-    block: Block, book: Book, promised: Mapping[str, Collection[QuantityPattern]]
-) -> tuple[list[Reference], list[Problem]]:
+    table: Mapping[str, Any], kind: str, *, book: Book, promised: Promised
+) -> tuple[list[tuple[Key, Reference]], list[Problem]]:
     """Read a reference or recorded block.
 
     Args:
-        block: The block.
+        table: What stands in it, references to parameter sets resolved.
+        kind: ``"reference"`` or ``"recorded"``.
         book: For its sources.
-        promised: Study → quantities that it promises.
+        promised: What the case can be asked for; a recorded value may be of anything.
 
     Returns:
-        The references; and the problems, not placed.
+        The references, each with its key path and without its line; and the problems, not placed.
     """
-    fields = _FIELDS if block.kind == "reference" else tuple(field for field in _FIELDS if field.name != "within")
+    fields = _FIELDS if kind == "reference" else tuple(field for field in _FIELDS if field.name != "within")
     references, problems = [], []
-    for quantity, row in _rows(block.table):
-        if not isinstance(row, Mapping):
-            found = "found no table"
-            problems.append(Problem(found, "{ value = …, within = …, source = … }", "write a table", (quantity,)))
-            continue
-        checked, wrong = check(fields, row)
-        wrong += _origin(checked, book)
-        wrong += _quantity(quantity, promised) if block.kind == "reference" else []
-        problems += [problem.below(quantity) for problem in wrong]
+    for key, quantity, row in _rows(table):
+        wrong = _quantity(quantity, promised) if kind == "reference" else _form(quantity)
+        if isinstance(row, Mapping):
+            checked, mistakes = check(fields, row)
+            wrong += [*mistakes, *_origin(checked, book)]
+        else:
+            checked = {}
+            wrong.append(Problem("found no table", "{ value = …, within = …, source = … }", "write a table"))
+        problems += [problem.below(*key) for problem in wrong]
         if not wrong:
-            line = block.line_of((quantity,))
-            references.append(Reference(quantity, line=line, **{"within": None, **checked}))
+            references.append((key, Reference(quantity, **{"within": None, **checked})))
     return references, problems
 
 
-def _rows(table: Mapping[str, Any]) -> list[tuple[str, Any]]:
-    """Return quantity → row; ``bands.gap = …`` without quotes, which TOML reads as nested tables, is understood too."""
-    rows = []
+def _rows(table: Mapping[str, Any]) -> list[tuple[Key, str, Any]]:
+    """Return key path, quantity and row of each value.
+
+    ``bands.gap = …`` without quotes, which TOML reads as nested tables, is understood too.
+    """
+    rows: list[tuple[Key, str, Any]] = []
     for name, entry in table.items():
-        if (
-            isinstance(entry, Mapping)
-            and "." not in name
-            and entry
-            and all(isinstance(row, Mapping) for row in entry.values())
-        ):
-            rows += [(f"{name}.{inner}", row) for inner, row in entry.items()]
+        is_nested = isinstance(entry, Mapping) and entry and all(isinstance(row, Mapping) for row in entry.values())
+        if is_nested and "." not in name:
+            rows += [((name, inner), f"{name}.{inner}", row) for inner, row in entry.items()]
         else:
-            rows.append((name, entry))
+            rows.append(((name,), name, entry))
     return rows
 
 
@@ -94,21 +109,31 @@ def _origin(checked: Mapping[str, Any], book: Book) -> list[Problem]:
     source = checked["source"]
     if source and source not in book.sources.entries:
         return [source_problem(source, book.sources)]
-    if not source and not checked["note"]:
-        return [Problem("neither source nor note", "every reference value names one of the two", "add source or note")]
+    if source == "" and checked["note"] == "":
+        return [Problem("neither source nor note", "every value names one of the two", "add source or note")]
     return []
 
 
-def _quantity(name: str, promised: Mapping[str, Collection[QuantityPattern]]) -> list[Problem]:
+def _form(name: str) -> list[Problem]:
     study, _, quantity = name.partition(".")
-    if study == "workings" and quantity:
+    return [] if study and quantity else [Problem(f'"{name}" names no quantity', _FORM, "write both, with a point")]
+
+
+def _quantity(name: str, promised: Promised) -> list[Problem]:
+    if wrong := _form(name):
+        return wrong
+    study, _, quantity = name.partition(".")
+    if study == "workings":
+        remedy = "add a python workings block, or name a study"
+        found = f'"{name}" is reported by workings, and this case has none'
+        return [] if promised.has_workings else [Problem(found, "quantities of this case", remedy)]
+    if study not in promised.studies:
+        allowed = "studies of this case are " + (", ".join(f'"{one}"' for one in promised.studies) or "none")
+        remedy = near(study, promised.studies) or "name one of them"
+        return [Problem(f'"{name}" names no study of this case', allowed, remedy)] if promised.is_whole else []
+    known = promised.studies[study]
+    if not known or any(one.fits(quantity) for one in known):
         return []
-    if study not in promised:
-        allowed = "studies of this case are " + (", ".join(f'"{one}"' for one in promised) or "none")
-        remedy = near(study, promised) or 'write "<study>.<quantity>"'
-        return [Problem(f'"{name}" names no study of this case', allowed, remedy)]
-    if not promised[study] or any(one.fits(quantity) for one in promised[study]):
-        return []
-    patterns = [one.pattern for one in promised[study]]
+    patterns = [one.pattern for one in known]
     remedy = near(quantity, patterns) or "use one of them"
     return [Problem(f'"{study}" has no quantity "{quantity}"', "it gives " + ", ".join(patterns), remedy)]

@@ -1,17 +1,16 @@
 """Replace every ``"@set.name"`` by the value of a parameter set, and remember where it came from."""
 
-import re
 from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Final
 
 from bandbook.cases.sets import ParameterSet
 from bandbook.errors import Problem, key_text
 from bandbook.parameters import near, one_of
 
-_REFERENCE = re.compile(r"@([a-z0-9][a-z0-9.-]*)\.([A-Za-z][A-Za-z0-9_]*)\Z")
-#: Keys whose text is never a number.
-_WORDS = frozenset(
+Key = tuple[str | int, ...]
+#: Keys whose text is never a number, except among the arguments of an author's function.
+_WORDS: Final = frozenset(
     {"name", "lattice", "question", "system", "built_by", "source", "note", "unit", "from", "to", "site"}
 )
 
@@ -36,9 +35,12 @@ class ParameterUse:
 
 
 def resolve(
-    value: Any, sets: Mapping[str, ParameterSet], *, key: tuple[str | int, ...] = (), block: int = 0
+    value: Any, sets: Mapping[str, ParameterSet], *, key: Key = (), block: int = 0
 ) -> tuple[Any, list[ParameterUse], list[Problem]]:
-    """Return a value with every reference replaced, the uses, and the references that lead nowhere."""
+    """Return a value with every reference replaced, the uses, and the references that lead nowhere.
+
+    A reference that leads nowhere is replaced by 1.0, so that the rest of its block can be checked.
+    """
     if isinstance(value, Mapping):
         pairs: list[tuple[str | int, Any]] = list(value.items())
     elif isinstance(value, list):
@@ -58,20 +60,35 @@ def resolve(
 
 
 def _one(
-    value: Any, sets: Mapping[str, ParameterSet], *, key: tuple[str | int, ...], block: int
+    value: Any, sets: Mapping[str, ParameterSet], *, key: Key, block: int
 ) -> tuple[Any, list[ParameterUse], list[Problem]]:
-    if not isinstance(value, str) or not value.startswith("@") or (key and key[-1] in _WORDS):
+    if not isinstance(value, str) or not value.startswith("@") or _is_word(key):
         return value, [], []
-    match = _REFERENCE.match(value)
-    if match is None:
-        found = f'"{value}" is no reference to a parameter set'
-        return 1.0, [], [Problem(found, '"@set.name"', "write the set, a point and the name of a value", key)]
-    if match[1] not in sets:
-        return 1.0, [], [one_of(match[1], list(sets), "parameter set").below(*key)]
-    values = sets[match[1]].values
-    if match[2] not in values:
-        allowed = f'"{match[1]}" holds ' + (", ".join(f'"{name}"' for name in values) or "no usable value")
-        remedy = near(match[2], values) or "add it to the set"
-        return 1.0, [], [Problem(f'the set "{match[1]}" has no value "{match[2]}"', allowed, remedy, key)]
-    number = values[match[2]].value
-    return number, [ParameterUse(match[1], match[2], key_text(key), block, number)], []
+    name, _, entry = value[1:].strip().rpartition(".")
+    if not name or not entry:
+        return 1.0, [], [_malformed(value, sets).below(*key)]
+    if name not in sets:
+        return 1.0, [], [one_of(name, sorted(sets), "parameter set").below(*key)]
+    if entry not in sets[name].values:
+        return 1.0, [], [_unknown(entry, sets[name]).below(*key)]
+    number = sets[name].values[entry].value
+    return number, [ParameterUse(name, entry, key_text(key), block, number)], []
+
+
+def _is_word(key: Key) -> bool:
+    return bool(key) and key[-1] in _WORDS and key[0] != "with"
+
+
+def _malformed(value: str, sets: Mapping[str, ParameterSet]) -> Problem:
+    holding = sorted(name for name, parameters in sets.items() if value[1:].strip() in parameters.values)
+    remedy = f'write "@{holding[0]}.{value[1:].strip()}"' if holding else "write the set, a point and the value's name"
+    return Problem(f'"{value}" is no reference to a parameter set', '"@set.name"', remedy)
+
+
+def _unknown(name: str, parameters: ParameterSet) -> Problem:
+    if parameters.problems:
+        found = f'the set "{parameters.name}" gives no value "{name}" and has mistakes of its own'
+        return Problem(found, "a value of a set without mistakes", f"correct {parameters.file} first")
+    allowed = f'"{parameters.name}" holds ' + (", ".join(f'"{one}"' for one in parameters.values) or "no value")
+    remedy = near(name, parameters.values) or "add it to the set"
+    return Problem(f'the set "{parameters.name}" has no value "{name}"', allowed, remedy)
