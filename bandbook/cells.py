@@ -4,6 +4,7 @@
 ``report`` adds a number. A kernel opens no file of the book: all it needs stands in the first cell.
 """
 
+import html
 import math
 from collections.abc import Callable, Iterator, Mapping
 from typing import Any
@@ -139,4 +140,4 @@ def _as_text(answer: Answer) -> str:
 
 
 def _as_html(answer: Answer) -> str:
-    return f"<pre>{_as_text(answer)}</pre>" + "".join(table.to_html() for table in answer.tables)
+    return f"<pre>{html.escape(_as_text(answer))}</pre>" + "".join(table.to_html() for table in answer.tables)

@@ -4,6 +4,9 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
+import numpy as np
+from numpy.typing import NDArray
+
 from bandbook.exhibits import KINDS, Figure, Quantity, QuantityName, Table, in_beta
 from bandbook.model import Model
 from bandbook.parameters import Field, Problem
@@ -67,3 +70,22 @@ class Analysis:
     tabulate: Callable[[Asked, Any], tuple[Table, ...]]
     draw: Callable[[Asked, Any], tuple[Figure, ...]]
     warn: Callable[[Asked, Any], tuple[str, ...]]
+
+
+def counted(number: int, noun: str) -> str:
+    """Return a number with its noun.
+
+    >>> counted(1, "level"), counted(3, "gap level"), counted(0, "gap level")
+    ('1 level', '3 gap levels', 'no gap levels')
+    """
+    return f"{number or 'no'} {noun}{'' if number == 1 else 's'}"
+
+
+def drawable(values: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return energies as figures draw them: rounded as they are stored, so that the last bits do not show.
+
+    >>> drawable(np.array([-1e-16, 1.0000000001])).tolist()
+    [0.0, 1.0]
+    """
+    rounded: NDArray[np.float64] = np.round(values, KINDS["level"].decimals) + 0.0
+    return rounded

@@ -4,13 +4,14 @@ from collections.abc import Mapping
 from typing import Any
 
 from bandbook.analyses.analysis import Analysis, Asked
-from bandbook.exhibits import Column, Figure, Quantity, QuantityName, Table, typeset
-from bandbook.exhibits import drawing as pen
+from bandbook.analyses.bands_figures import GREEK, draw
+from bandbook.exhibits import Column, Quantity, QuantityName, Table
 from bandbook.model import Model
 from bandbook.parameters import Problem
 from bandbook.solver.bands import Bands, Extreme, solve_bands
+from bandbook.solver.masses import Mass
 
-GREEK = {"Gamma": "Γ"}
+Edge = tuple[str, Extreme, Mass]
 
 
 def inspect(study: Mapping[str, Any], model: Model | None) -> list[Problem]:
@@ -54,35 +55,18 @@ def report(asked: Asked, result: Bands) -> tuple[Quantity, ...]:
 
 
 def tabulate(asked: Asked, result: Bands) -> tuple[Table, ...]:
-    """Return where the edges are, and the energies on the path."""
-    dimension = asked.model.dimension
-    k_heads = tuple(
-        Column(
-            f"k{axis + 1}" if dimension > 1 else "k",
-            f"k{'₁₂₃'[axis]}" if dimension > 1 else "k",
-            "k along a lattice vector",
-            "π/a",
-            6,
-            4,
-        )
-        for axis in range(dimension)
-    )
-    edges = (
+    """Return where the edges are, the principal masses in two and three dimensions, and the energies on the path."""
+    k_heads = _k_heads(asked.model.dimension)
+    found = (
         ("valence top", result.valence, result.mass_hole),
         ("conduction bottom", result.conduction, result.mass_electron),
     )
-    rows = tuple(_edge_row(name, extreme, mass) for name, extreme, mass in edges if extreme is not None)
-    heads = (
-        Column("edge", "edge", "which edge"),
-        Column("band", "band", "number of the band from below"),
-        Column("energy", "E", "energy", "eV", 6, 4),
-        *k_heads,
-        Column("mass", "m*", "effective mass, geometric mean", "m_e", 6, 4),
-        Column("remark", "remark", "why there is no mass"),
-    )
-    tables = (Table("edges", "Band edges, searched in the whole zone.", heads, rows),) if rows else ()
+    edges = tuple((name, extreme, mass) for name, extreme, mass in found if extreme is not None)
+    tables = [_edges_table(edges, k_heads)] if edges else []
+    if any(len(mass.principal) > 1 for _, _, mass in edges):
+        tables.append(_masses_table(edges, asked.model.dimension))
     bands = tuple(
-        Column(f"band_{number + 1}", f"E{number + 1}", "energy of the band", "eV", 6, 4)
+        Column(f"band_{number + 1}", f"E{number + 1}", f"energy of band {number + 1} from below", "eV", 6, 4)
         for number in range(result.energies.shape[1])
     )
     path = tuple(
@@ -92,45 +76,40 @@ def tabulate(asked: Asked, result: Bands) -> tuple[Table, ...]:
     return (*tables, Table("path", "Energies on the path.", (*k_heads, *bands), path, most_shown=12))
 
 
-def _edge_row(name: str, extreme: Extreme, mass: Any) -> tuple[Any, ...]:
-    return (name, extreme.band, extreme.energy, *extreme.k, mass.mean, mass.reason)
+def _k_heads(dimension: int) -> tuple[Column, ...]:
+    if dimension == 1:
+        return (Column("k", "k", "k along the lattice vector", "π/a", 6, 4),)
+    return tuple(
+        Column(f"k{axis + 1}", f"k{'₁₂₃'[axis]}", f"k along lattice vector {axis + 1}", "π/a", 6, 4)
+        for axis in range(dimension)
+    )
 
 
-def _words(result: Bands) -> str:
-    if result.kind != "insulator":
-        return f"{result.kind}; Fermi energy {typeset(result.fermi_energy, 3)} eV"
-    if result.gap is None or result.valence is None or result.conduction is None:
-        return "no gap between a filled and an empty band"
-    at = ", ".join(typeset(part, 3) for part in result.conduction.k)
-    kind = "direct" if abs(result.gap - (result.direct_gap or 0.0)) < 1e-7 else "indirect"
-    return f"insulator with a {kind} gap of {typeset(result.gap, 3)} eV, lowest empty state at k = ({at}) π/a"
+def _edges_table(edges: tuple[Edge, ...], k_heads: tuple[Column, ...]) -> Table:
+    heads = (
+        Column("edge", "edge", "which edge"),
+        Column("band", "band", "number of the band from below"),
+        Column("energy", "E", "energy", "eV", 6, 4),
+        *k_heads,
+        Column("mass", "m*", "effective mass, geometric mean of the principal masses", "m_e", 6, 4),
+        Column("remark", "remark", "why there is no mass"),
+    )
+    rows: tuple[tuple[Any, ...], ...] = tuple(
+        (name, extreme.band, extreme.energy, *extreme.k, mass.mean, mass.reason) for name, extreme, mass in edges
+    )
+    return Table("edges", "Band edges, searched in the whole zone.", heads, rows)
 
 
-def draw(asked: Asked, result: Bands) -> tuple[Figure, ...]:
-    """Return E(k) on the path."""
-    words = f"{_words(result)}; total width {typeset(result.total_width, 3)} eV"
-    names = [GREEK.get(name, name) for name in result.path.names]
-    route = "–".join(names)
-
-    def strokes(axes: Any) -> None:
-        axes.plot(result.path.distance, result.energies, color=pen.SERIES[0], linewidth=1.2)
-        ticks = [float(result.path.distance[at]) for at in result.path.at]
-        for tick in ticks:
-            axes.axvline(tick, color=pen.LINE, linewidth=0.8, zorder=0)
-        axes.set_xlim(ticks[0], ticks[-1])
-        if asked.model.dimension == 1:
-            middle = [ticks[0] + part * (ticks[-1] - ticks[0]) for part in (0, 0.25, 0.5, 0.75, 1)]
-            axes.set_xticks(middle, [f"{names[0]}  0", "1/4", "1/2", "3/4", f"{names[-1]}  1"])
-            axes.set_xlabel("k / (π/a)")
-        else:
-            axes.set_xticks(ticks, names)
-            axes.set_xlabel("k along the path")
-        if result.fermi_energy is not None:
-            pen.rule(axes, result.fermi_energy, "Fermi energy")
-        pen.energy_axis(axes, beta=asked.model.beta_unit, alpha=asked.model.alpha_unit)
-
-    text = (f"Bands along {route}: {words}.", f"E(k) along {route}: {words}.")
-    return (pen.drawn("bands" if asked.name == "bands" else f"{asked.name}-bands", strokes, words=text, height=4.2),)
+def _masses_table(edges: tuple[Edge, ...], dimension: int) -> Table:
+    heads = (
+        Column("edge", "edge", "which edge"),
+        *(
+            Column(f"mass_{axis + 1}", f"m{'₁₂₃'[axis]}", "principal value of the mass tensor, ascending", "m_e", 6, 4)
+            for axis in range(dimension)
+        ),
+    )
+    rows: tuple[tuple[Any, ...], ...] = tuple((name, *mass.principal) for name, _, mass in edges if mass.principal)
+    return Table("masses", "Principal values of the effective-mass tensors at the band edges.", heads, rows)
 
 
 def warn(asked: Asked, result: Bands) -> tuple[str, ...]:

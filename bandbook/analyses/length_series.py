@@ -6,10 +6,10 @@ from typing import Any
 
 import numpy as np
 
-from bandbook.analyses.analysis import Analysis, Asked
+from bandbook.analyses.analysis import Analysis, Asked, counted
+from bandbook.analyses.length_series_figures import draw
 from bandbook.analyses.piece_fields import CUT, LENGTHS, cut_of, inspect_piece
-from bandbook.exhibits import Column, Figure, Quantity, QuantityName, Table, typeset
-from bandbook.exhibits import drawing as pen
+from bandbook.exhibits import KINDS, Column, Quantity, QuantityName, Table, typeset
 from bandbook.model import Model
 from bandbook.parameters import Field, Problem
 from bandbook.solver.fits import FORMS, Fit, fit_series
@@ -34,6 +34,16 @@ class SeriesResult:
     fits: tuple[Fit, ...]
     uses_extended: bool
     fitted: Any
+
+    @property
+    def limit(self) -> float | None:
+        """Gap of the infinite system, eV: 0 where bands touch or overlap, ``None`` where no band is filled or empty."""
+        series = self.series
+        return None if series.kind == "insulator" and not series.band_gap else series.band_gap
+
+    def miss(self, fit: Fit) -> float | None:
+        """Return the limit of a fit less the computed one, eV, or ``None``."""
+        return None if fit.limit is None or self.limit is None else fit.limit - self.limit
 
 
 def inspect(study: Mapping[str, Any], model: Model | None) -> list[Problem]:
@@ -77,7 +87,7 @@ def report(asked: Asked, result: SeriesResult) -> tuple[Quantity, ...]:
             ),
         )
     )
-    limit = asked.quantity("band_gap", "difference", series.band_gap, "gap of the infinite system, from its bands")
+    limit = asked.quantity("band_gap", "difference", result.limit, "gap of the infinite system, from its bands")
     fits = tuple(
         asked.quantity(f"limit_{fit.form}", "fit", fit.limit, f"limit of the form {FORMS[fit.form].formula}")
         for fit in result.fits
@@ -125,82 +135,22 @@ def _fits_table(result: SeriesResult) -> Table:
         Column("window_error", "window error", "spread of the limit when the shortest pieces are dropped", "eV", 5, 4),
         Column("rms", "rms", "root mean square deviation", "eV", 5, 4),
         Column("conjugation_length", "ECL", "effective conjugation length, within 1 % of E₁ − E∞", "cells", 3, 1),
+        Column("parameters", "parameters", "parameters of the form, energies in eV, N in cells"),
         Column("remark", "remark", "why there is no fit"),
     )
-    limit = result.series.band_gap
     rows = tuple(
-        (fit.form, FORMS[fit.form].formula, fit.limit, None if fit.limit is None else fit.limit - limit,
-         fit.window_error, fit.rms, fit.conjugation_length, fit.reason)
+        (fit.form, FORMS[fit.form].formula, fit.limit, result.miss(fit), fit.window_error, fit.rms,
+         fit.conjugation_length, _parameters(fit), fit.reason)
         for fit in result.fits
     )  # fmt: skip
     basis = "extended gap" if result.uses_extended else "gap"
     return Table("fits", f"Forms fitted to the {basis}, and how far each misses the computed limit.", heads, rows)
 
 
-def _words(result: SeriesResult) -> str:
-    series = result.series
-    name = "Extended gap" if result.uses_extended else "Gap"
-    values = series.extended_gap if result.uses_extended else series.gap
-    known = np.flatnonzero(np.isfinite(values))
-    if not known.size:
-        return f"No length has a gap; the limit of the infinite system is {typeset(series.band_gap, 3)} eV"
-    first, last = known[0], known[-1]
-    return (
-        f"{name} from {typeset(values[first], 3)} eV at N = {series.n_cells[first]} to {typeset(values[last], 3)} eV at"
-        f" N = {series.n_cells[last]}; the infinite system has {typeset(series.band_gap, 3)} eV"
-    )
-
-
-def draw(asked: Asked, result: SeriesResult) -> tuple[Figure, ...]:
-    """Return gap against N and against 1/N, side by side, with fits and limit."""
-    words = _words(result)
-    forms = "; ".join(f"{fit.form} gives {typeset(fit.limit, 3)} eV" for fit in result.fits if fit.limit is not None)
-    caption = f"{words}." + (f" Limits of the fits: {forms}." if forms else "")
-    oscillators = asked.study["oscillators_per_cell"]
-
-    def strokes(axes: Any) -> None:
-        _panel(axes[0], result, oscillators=oscillators, is_inverse=False)
-        _panel(axes[1], result, oscillators=oscillators, is_inverse=True)
-        axes[0].set_ylabel("gap / eV")
-        axes[0].legend(fontsize=8, loc="upper right")
-
-    name = "series" if asked.name == "length_series" else f"{asked.name}-series"
-    return (pen.drawn(name, strokes, words=(f"Gap against length. {caption}", caption), height=3.8, columns=2),)
-
-
-def _panel(axes: Any, result: SeriesResult, *, oscillators: int, is_inverse: bool) -> None:
-    series = result.series
-    place = 1.0 / series.n_cells if is_inverse else series.n_cells
-    if result.uses_extended:
-        axes.plot(place, series.extended_gap, "o", color=pen.SERIES[0], markersize=4.5, label="extended gap")
-    axes.plot(
-        place, series.gap, "s" if result.uses_extended else "o", color=pen.SERIES[1 if result.uses_extended else 0],
-        markerfacecolor=pen.PAPER, markersize=4.5, label="gap",
-    )  # fmt: skip
-    n = (
-        1.0 / np.linspace(1e-4, 1.0 / series.n_cells[0], 300)
-        if is_inverse
-        else np.linspace(series.n_cells[0], series.n_cells[-1], 300)
-    )
-    for number, fit in enumerate(result.fits):
-        if fit.limit is not None:
-            style = {
-                "color": pen.SERIES[(number + 2) % len(pen.SERIES)],
-                "linestyle": pen.DASHES[number % len(pen.DASHES)],
-            }
-            axes.plot(
-                1.0 / n if is_inverse else n,
-                fit.curve(n, oscillators=oscillators),
-                linewidth=1.1,
-                label=fit.form,
-                **style,
-            )
-    limit = f"limit {typeset(series.band_gap, 3)}"
-    pen.rule(axes, series.band_gap, limit, style="--") if not is_inverse else axes.axhline(
-        series.band_gap, color=pen.QUIET, linestyle="--", linewidth=1.0
-    )
-    axes.set_xlabel("1/N (N in cells)" if is_inverse else "N / cells")
-    axes.set_ylim(bottom=min(0.0, float(np.nanmin(series.gap)) if np.isfinite(series.gap).any() else 0.0))
+def _parameters(fit: Fit) -> str:
+    """Return the parameters of a fit as text, with the decimals of a coefficient."""
+    decimals = KINDS["coefficient"].decimals
+    return ", ".join(f"{name} = {typeset(value, decimals)}" for name, value in fit.parameters.items())
 
 
 def warn(asked: Asked, result: SeriesResult) -> tuple[str, ...]:
@@ -208,8 +158,8 @@ def warn(asked: Asked, result: SeriesResult) -> tuple[str, ...]:
     series = result.series
     warnings = []
     for fit in result.fits:
-        miss = None if fit.limit is None else abs(fit.limit - series.band_gap)
-        if miss is not None and miss > (fit.window_error or 0.0) + 1e-5:
+        miss = abs(result.miss(fit) or 0.0)
+        if miss > (fit.window_error or 0.0) + 1e-5:
             error = (
                 f"its window error is {typeset(fit.window_error, 3)} eV"
                 if fit.window_error is not None
@@ -217,9 +167,12 @@ def warn(asked: Asked, result: SeriesResult) -> tuple[str, ...]:
             )
             warnings.append(f"The form {fit.form} misses the computed limit by {typeset(miss, 3)} eV; {error}.")
     if series.is_open_shell.any():
-        warnings.append(f"{int(series.is_open_shell.sum())} lengths have an open shell and are left out of the fits.")
+        warnings.append(
+            f"{counted(int(series.is_open_shell.sum()), 'length')} with an open shell: left out of the fits."
+        )
     if series.n_gap_levels:
-        warnings.append(f"Long pieces have {series.n_gap_levels} gap levels; the fits rest on the extended gap.")
+        levels = counted(series.n_gap_levels, "gap level")
+        warnings.append(f"Long pieces have {levels} in the fundamental gap; the fits rest on the extended gap.")
     elif series.reason:
         warnings.append(f"There is no extended gap: {series.reason}.")
     if asked.study["ends"] == "ring":

@@ -6,16 +6,18 @@ from typing import Any
 
 import numpy as np
 
-from bandbook.analyses.analysis import Analysis, Asked
+from bandbook.analyses.analysis import Analysis, Asked, counted
 from bandbook.analyses.levels_figures import draw
 from bandbook.analyses.piece_fields import CELLS, CUT, cut_of, inspect_piece
 from bandbook.exhibits import Column, Quantity, QuantityName, Table
 from bandbook.model import Model
 from bandbook.parameters import Problem
-from bandbook.solver import Levels, Piece, Places, cut_piece, node_labels, place_on_bands, solve_levels
+from bandbook.solver import Levels, Piece, Places, cut_piece, is_backbone, node_labels, place_on_bands, solve_levels
 
 #: W below this is worth a warning: the k does not describe the level.
 LEAST_W = 0.5
+#: Sites that a warning names.
+MOST_NAMED = 4
 
 
 @dataclass(frozen=True, eq=False)
@@ -98,7 +100,12 @@ def tabulate(asked: Asked, result: LevelsResult) -> tuple[Table, ...]:
             result.nodes or blank,
         ),
         (Column("place", "gap level at", "where a gap level sits"), places.place),
-        (Column("participation", "spread", "over how many sites it spreads", "sites", 6, 2), levels.participation),
+        (
+            Column(
+                "participation", "participation", "participation ratio: over how many sites it spreads", "sites", 6, 2
+            ),
+            levels.participation,
+        ),
         (Column("reason", "remark", "why k or W is missing"), tuple(reason or None for reason in places.reason)),
     )
     used = [(head, values) for head, values in columns if any(value is not None for value in values)]
@@ -117,24 +124,37 @@ def _cell(value: Any) -> Any:
     return value.item() if isinstance(value, np.generic) else value
 
 
+def dangling(model: Model, piece: Piece) -> list[str]:
+    """Return the sites that have one bond in the piece and more in the crystal; none for an unbranched chain.
+
+    The ends of a chain are what one means; a ribbon or a skeleton with such sites is not the molecule that one means.
+    """
+    if model.dimension == 0 or is_backbone(model):
+        return []
+    bonds = [index for coupling in model.couplings if coupling.beta for index in (coupling.start, coupling.end)]
+    in_crystal = np.bincount(np.array(bonds, dtype=np.intp), minlength=model.n_sites)
+    lonely = np.flatnonzero((piece.coordination == 1) & (in_crystal[piece.site] > 1))
+    return [
+        f"{model.sites[piece.site[site]].name} of cell {', '.join(str(step) for step in piece.cell[site])}"
+        for site in lonely
+    ]
+
+
 def warn(asked: Asked, result: LevelsResult) -> tuple[str, ...]:
     """Return what a reader could be misled by."""
     levels, places, piece = result.levels, result.places, result.piece
     warnings = []
     if levels.is_open_shell:
         warnings.append("Open shell: the highest group is partly filled and counted evenly; the gap is 0.")
-    if asked.model.dimension and not piece.is_ring:
-        lonely = np.flatnonzero(piece.coordination == 1)
-        if lonely.size and np.bincount(piece.coordination).argmax() > 2:
-            names = ", ".join(
-                f"{asked.model.sites[piece.site[site]].name} of cell {piece.cell[site][0]}" for site in lonely[:4]
-            )
-            warnings.append(
-                f"The cut leaves {lonely.size} one-coordinated sites ({names}); add or drop sites to finish it."
-            )
+    lonely = dangling(asked.model, piece)
+    if lonely:
+        names = ", ".join(lonely[:MOST_NAMED]) + (", …" if len(lonely) > MOST_NAMED else "")
+        warnings.append(
+            f"The cut leaves {counted(len(lonely), 'one-coordinated site')} ({names}); add or drop sites to finish it."
+        )
     weak = [W for W in places.W if W is not None and W < LEAST_W]
     if weak:
-        warnings.append(f"{len(weak)} levels have W below {LEAST_W}: their k says little about them.")
+        warnings.append(f"{counted(len(weak), 'level')} with W below {LEAST_W}: the k says little about them.")
     if any(reason == "in a flat band" for reason in places.reason):
         warnings.append("Levels in a flat band have no k.")
     if levels.is_selected:

@@ -33,13 +33,35 @@ CUT = (
 )  # fmt: skip
 
 
+#: The keys of a change that name a site.
+_NAMED = ("site", "from", "to")
+#: The keys that make a change; ``cell`` and ``to_cell`` say where.
+CHANGES = (("site", "alpha"), ("site", "remove"), ("from", "to", "beta"))
+
+
 def inspect_piece(study: Mapping[str, Any], model: Model | None) -> list[Problem]:
-    """Return what is wrong with a piece: cells missing or too many, names that no site has, changes of no kind."""
+    """Return what is wrong with a piece: its cells, its ends, names that no site has, changes of no kind or outside.
+
+    Args:
+        study: Checked parameters, a single number of cells in each direction.
+        model: The model; ``None`` where it is not known before the run.
+    """
     if model is None:
         return []
+    sizes = _sizes(study, model)
+    if sizes and study["add"]:
+        sizes = (sizes[0] + 1, *sizes[1:])  # the cell of the added sites
+    shape = _on_molecule(study) if model.dimension == 0 else [*_cells(study, model), *_ends(study, model)]
+    return [*shape, *_names(study, model), *_changes(study, sizes)]
+
+
+def _sizes(study: Mapping[str, Any], model: Model) -> tuple[int, ...] | None:
+    """Return the cells along each lattice vector, ``()`` for a molecule, ``None`` where they are not given aright."""
+    cells = study.get("cells")
     if model.dimension == 0:
-        return [*_on_molecule(study), *_names(study, model), *_changes(study, model)]
-    return [*_cells(study, model), *_ring(study, model), *_names(study, model), *_changes(study, model)]
+        return ()
+    sizes = tuple(cells) if isinstance(cells, list) else (cells,)
+    return sizes if len(sizes) == model.dimension and None not in sizes else None
 
 
 def _on_molecule(study: Mapping[str, Any]) -> list[Problem]:
@@ -57,54 +79,71 @@ def _cells(study: Mapping[str, Any], model: Model) -> list[Problem]:
     if cells is None:
         remedy = f"add cells = {4 if model.dimension == 1 else [4] * model.dimension}"
         return [Problem('the key "cells" is missing', f"the system is periodic: {wanted}", remedy)]
-    counts = cells if isinstance(cells, list) else [cells]
-    if model.dimension > 1 and len(counts) != model.dimension:
+    sizes = _sizes(study, model)
+    if sizes is None:
         return [Problem(f"found {cells}", f"the system is periodic: {wanted}", "correct it", ("cells",))]
-    if math.prod(counts) > MOST_CELLS and model.dimension > 1:
-        return [Problem(f"{math.prod(counts)} cells in all", f"at most {MOST_CELLS}", "take fewer", ("cells",))]
+    if math.prod(sizes) > MOST_CELLS:
+        return [Problem(f"{math.prod(sizes)} cells in all", f"at most {MOST_CELLS}", "take fewer", ("cells",))]
     return []
 
 
-def _ring(study: Mapping[str, Any], model: Model) -> list[Problem]:
-    del model
+def _ends(study: Mapping[str, Any], model: Model) -> list[Problem]:
     given = [name for name in ("add", "drop") if study[name]]
-    if study["ends"] != "ring":
+    if study["ends"] == "ring":
+        wrong = ('with ends = "ring"', "a ring has no end", "remove one of them")
+    elif model.dimension > 1:
+        wrong = (f"in {model.dimension} dimensions", "they finish the ends of a line of cells", "use changes instead")
+    else:
         return []
-    return [
-        Problem(f'"{name}" with ends = "ring"', "a ring has no end", "remove one of them", (name,)) for name in given
-    ]
+    return [Problem(f'"{name}" {wrong[0]}', *wrong[1:], (name,)) for name in given]
 
 
 def _names(study: Mapping[str, Any], model: Model) -> list[Problem]:
-    names = [site.name for site in model.sites]
-    problems = []
-    for key in ("add", "drop"):
-        for row, name in enumerate(study[key]):
-            problems += [] if name in names else [one_of(name, names, "site").below(key, row)]
-    for row, change in enumerate(study["changes"]):
-        for key in ("site", "from", "to"):
-            name = change[key]
-            problems += (
-                [] if name is None or name in names else [one_of(name, names, "site").below("changes", row, key)]
-            )
-    return problems
+    known = [site.name for site in model.sites]
+    given: list[tuple[tuple[str | int, ...], str | None]] = [
+        ((key, row), name) for key in ("add", "drop") for row, name in enumerate(study[key])
+    ]
+    given += [(("changes", row, key), change[key]) for row, change in enumerate(study["changes"]) for key in _NAMED]
+    return [one_of(name, known, "site").below(*key) for key, name in given if name is not None and name not in known]
 
 
-def _changes(study: Mapping[str, Any], model: Model) -> list[Problem]:
-    problems = []
-    for row, change in enumerate(study["changes"]):
-        is_site = change["site"] is not None and (change["alpha"] is not None or bool(change["remove"]))
-        is_bond = None not in (change["from"], change["to"], change["beta"])
-        if is_site == is_bond:
-            allowed = "site with alpha or remove = true; or from, to and beta"
-            problems.append(Problem("a change of neither or both kinds", allowed, "correct it", ("changes", row)))
-        if model.dimension == 0 and change["cell"] is not None:
-            problems.append(
-                Problem("a cell on a molecule", "a molecule has none", "remove it", ("changes", row, "cell"))
-            )
-        if model.dimension and change["cell"] is None:
-            problems.append(Problem("no cell", "cells count from 0", "add cell = 0", ("changes", row)))
-    return problems
+def _changes(study: Mapping[str, Any], sizes: tuple[int, ...] | None) -> list[Problem]:
+    return [
+        problem.below("changes", row)
+        for row, change in enumerate(study["changes"])
+        for problem in [*_kind(change), *(() if sizes is None else _place(change, sizes))]
+    ]
+
+
+def _kind(change: Mapping[str, Any]) -> list[Problem]:
+    """Return the problem of a change that is not exactly one of those there are."""
+    given = {key for key, value in change.items() if value is not None and value is not False}
+    made = given - {"cell"} - ({"to_cell"} if "from" in given else set())
+    if any(made == set(keys) for keys in CHANGES):
+        return []
+    allowed = "site with alpha, or site with remove = true, or from with to and beta"
+    return [Problem("a change of neither or both kinds", allowed, "correct it")]
+
+
+def _place(change: Mapping[str, Any], sizes: tuple[int, ...]) -> list[Problem]:
+    """Return what is wrong with the cells that a change names."""
+    named = [(key, change[key]) for key in ("cell", "to_cell") if change[key] is not None]
+    if not sizes:
+        return [Problem("a cell on a molecule", "a molecule has none", "remove it", (key,)) for key, _ in named]
+    if change["cell"] is None:
+        first = 0 if len(sizes) == 1 else [0] * len(sizes)
+        return [Problem("a change without a cell", "cells count from 0", f"add cell = {first}")]
+    reach = " and ".join(f"0 to {size - 1}" for size in sizes)
+    return [
+        Problem(f"there is no cell {cell} in the piece", f"its cells count {reach}", "correct it", (key,))
+        for key, cell in named
+        if not _is_inside(cell, sizes)
+    ]
+
+
+def _is_inside(cell: int | list[int], sizes: tuple[int, ...]) -> bool:
+    place = cell if isinstance(cell, list) else [cell]
+    return len(place) == len(sizes) and all(0 <= part < size for part, size in zip(place, sizes, strict=True))
 
 
 def cut_of(study: Mapping[str, Any]) -> dict[str, Any]:

@@ -7,8 +7,7 @@ takes the page's colours and one opened alone is readable.
 import html
 import io
 import re
-from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from collections.abc import Callable, Sequence
 from typing import Any, Final
 
 from bandbook.exhibits.figure import Figure
@@ -26,11 +25,13 @@ COLOURS: Final = {
     "series-4": ("#090A0B", "--bb-series-4", "#A4467C"),
     "series-5": ("#0A0B0C", "--bb-series-5", "#8A6A00"),
     "series-6": ("#0B0C0D", "--bb-series-6", "#2C7FA8"),
+    "series-7": ("#0C0D0E", "--bb-series-7", "#7A7A7A"),
+    "series-8": ("#0D0E0F", "--bb-series-8", "#9C6632"),
 }
 INK, QUIET, LINE, ACCENT, PAPER = (COLOURS[role][0] for role in ("ink", "quiet", "line", "accent", "paper"))
-SERIES: Final = tuple(COLOURS[f"series-{number}"][0] for number in range(1, 7))
-DASHES: Final = ("-", "--", "-.", ":", (0, (5, 1, 1, 1, 1, 1)), (0, (8, 3)))
-MARKERS: Final = ("o", "s", "^", "D", "v", "P")
+SERIES: Final = tuple(COLOURS[f"series-{number}"][0] for number in range(1, 9))
+DASHES: Final = ("-", "--", "-.", ":", (0, (5, 1, 1, 1, 1, 1)), (0, (8, 3)), (0, (1, 3)), (0, (8, 2, 2, 2)))
+MARKERS: Final = ("o", "s", "^", "D", "v", "P", "<", ">")
 
 STYLE: Final[dict[str, Any]] = {
     "svg.fonttype": "none",
@@ -57,84 +58,76 @@ STYLE: Final[dict[str, Any]] = {
     "mathtext.fontset": "dejavusans",
     "path.simplify": False,
 }
+#: Inches; a page scales the figure to the width of its column.
 WIDTH: Final = 6.4
-_NUMBER: Final = re.compile(r"-?\d+\.\d{3,}(?:e-?\d+)?")
+_TAG: Final = re.compile(r"<[^>]*>")
+_NUMBER: Final = re.compile(r"-?\d+\.\d{3,}")
+_ID: Final = re.compile(r'(\bid="|href="#|url\(#)')
+_FONT: Final = re.compile(r"'DejaVu Sans'(?:, [^;\"]*)?")
+
+Point = tuple[float, float]
 
 
-@contextmanager
-def drawing(name: str, *, alt: str, caption: str, height: float = 3.8, columns: int = 1) -> Iterator[Any]:
-    """Yield a blank figure's axes and a box that holds the finished :class:`Figure` afterwards.
+def drawn(
+    name: str,
+    strokes: Callable[[Any], None],
+    *,
+    words: tuple[str, str],
+    study: str = "",
+    height: float = 3.8,
+    columns: int = 1,
+) -> Figure:
+    """Return the figure that ``strokes`` makes, in the one style whatever the style of the kernel is.
 
     Args:
-        name: Its file name without ending.
-        alt: What it shows, with the numbers.
-        caption: What it says.
-        height: Inches; the width is 6.4.
-        columns: Axes side by side.
+        name: Its file name without ending, unique in its study.
+        strokes: Takes the axes; the list of them where there are several columns.
+        words: Alternative text and caption.
+        study: The study; with it the ids inside are unique on a page.
+        height: Inches.
+        columns: Axes side by side, with one vertical scale.
     """
     import matplotlib as mpl
     from matplotlib.backends.backend_svg import FigureCanvasSVG
     from matplotlib.figure import Figure as Canvas
 
-    with mpl.rc_context(STYLE):
+    with mpl.rc_context():
+        mpl.rcdefaults()
+        mpl.rcParams.update(STYLE)
         canvas = Canvas(figsize=(WIDTH, height), layout="constrained")
         FigureCanvasSVG(canvas)
-        sheet = Sheet(canvas, canvas.subplots(1, columns, squeeze=False)[0])
-        yield sheet
+        axes = canvas.subplots(1, columns, squeeze=False, sharey=True)[0]
+        strokes(axes if columns > 1 else axes[0])
         out = io.StringIO()
         canvas.savefig(out, format="svg", metadata={"Date": None, "Creator": None, "Format": None, "Type": None})
-        sheet.figure = Figure(name, finished(out.getvalue(), name, alt), alt, caption)
+    svg = finished(out.getvalue(), f"{study}-{name}" if study else name, words[0])
+    return Figure(name, svg, *words)
 
 
-class Sheet:
-    """A figure while it is drawn.
-
-    Attributes:
-        axes: Its axes.
-        figure: The finished figure, after the drawing.
-    """
-
-    figure: Figure
-
-    def __init__(self, canvas: Any, axes: Any) -> None:
-        self.canvas = canvas
-        self.axes = axes
-
-
-def drawn(name: str, draw: Callable[[Any], None], *, words: tuple[str, str], **size: Any) -> Figure:
-    """Return the figure that ``draw`` makes on one pair of axes.
+def finished(svg: str, prefix: str, alt: str) -> str:
+    """Return the SVG with properties for colours, short numbers, ids of its own, and its words.
 
     Args:
-        name: Its file name without ending.
-        draw: Takes the axes.
-        words: Alternative text and caption.
-        size: ``height`` and ``columns`` of :func:`drawing`; with several columns ``draw`` takes the list of axes.
+        svg: As matplotlib saves it.
+        prefix: Put before every id.
+        alt: What the figure shows.
     """
-    with drawing(name, alt=words[0], caption=words[1], **size) as sheet:
-        draw(sheet.axes if size.get("columns", 1) > 1 else sheet.axes[0])
-    figure: Figure = sheet.figure
-    return figure
-
-
-def finished(svg: str, name: str, alt: str) -> str:
-    """Return the SVG with properties for colours, short numbers, ids of its own, and its words."""
-    svg = svg[svg.index("<svg") :]
-    svg = re.sub(r"<metadata>.*?</metadata>", "", svg, flags=re.DOTALL)
-    for sentinel, prop, light in COLOURS.values():
-        svg = re.sub(sentinel, f"var({prop}, {light})", svg, flags=re.IGNORECASE)
-    svg = re.sub(r'"[^"]*"', lambda quoted: _NUMBER.sub(_short, quoted[0]), svg)
-    svg = re.sub(r'\bid="([^"]+)"', rf'id="{name}-\1"', svg)
-    svg = re.sub(r'(href="#|url\(#)([^")]+)', rf"\1{name}-\2", svg)
-    svg = re.sub(r"font: ([\d.]+)px 'DejaVu Sans'[^;\"]*", r"font: \1px var(--bb-font, sans-serif)", svg)
-    svg = svg.replace("'DejaVu Sans'", "var(--bb-font, sans-serif)")
+    svg = re.sub(r"<metadata>.*?</metadata>\s*", "", svg[svg.index("<svg") :], flags=re.DOTALL)
+    svg = _TAG.sub(lambda tag: _in_house(tag[0], prefix), svg)
     box = re.search(r'viewBox="[^"]+"', svg)
     head = f'<svg xmlns="http://www.w3.org/2000/svg" xmlns:xlink="http://www.w3.org/1999/xlink" {box[0] if box else ""}'
-    words = f' role="img" aria-label="{html.escape(alt, quote=True)}" data-figure="{html.escape(name, quote=True)}">'
-    return re.sub(r"<svg[^>]*>", lambda _: head + words, svg, count=1)
+    label = f' role="img" aria-label="{html.escape(alt)}" data-figure="{html.escape(prefix)}">'
+    title = f"<title>{html.escape(alt, quote=False)}</title>"
+    return re.sub(r"<svg[^>]*>", lambda _: head + label + title, svg, count=1)
 
 
-def _short(match: re.Match[str]) -> str:
-    return f"{round(float(match[0]), 2) + 0.0:g}" if abs(float(match[0])) < 1e6 else match[0]
+def _in_house(tag: str, prefix: str) -> str:
+    """Return a tag with properties for colours and font, short numbers, and ids of this figure."""
+    for sentinel, prop, light in COLOURS.values():
+        tag = re.sub(sentinel, f"var({prop}, {light})", tag, flags=re.IGNORECASE)
+    tag = _NUMBER.sub(lambda number: f"{round(float(number[0]), 2) + 0.0:.2f}".rstrip("0").rstrip("."), tag)
+    tag = _FONT.sub("var(--bb-font, sans-serif)", tag)
+    return _ID.sub(lambda start: f"{start[0]}{prefix}-", tag)
 
 
 def energy_axis(axes: Any, *, beta: float | None, alpha: float = 0.0) -> None:
@@ -146,11 +139,54 @@ def energy_axis(axes: Any, *, beta: float | None, alpha: float = 0.0) -> None:
         right.spines["right"].set_visible(True)
 
 
-def rule(axes: Any, energy: float, text: str, *, style: str = ":") -> None:
-    """Draw a horizontal rule with its label at the right end, inside the axes."""
+def key(axes: Any) -> None:
+    """Name the signs of an axes above the figure, where nothing can lie below them."""
+    handles, labels = axes.get_legend_handles_labels()
+    if handles:
+        axes.figure.legend(handles, labels, loc="outside upper left", ncols=min(len(handles), 4), fontsize=8.5)
+
+
+def rule(axes: Any, energy: float, text: str, *, style: str = ":", clear_of: Sequence[Point] = ()) -> None:
+    """Draw a horizontal rule with its label beside it, where the label is farthest from some points.
+
+    Call it when the limits of the axes are set.
+
+    Args:
+        axes: The axes.
+        energy: Where the rule lies.
+        text: The label.
+        style: Dotted for a Fermi energy, dashed for a limit.
+        clear_of: Points that the label keeps away from.
+    """
     axes.axhline(energy, color=QUIET, linestyle=style, linewidth=1.0, zorder=0)
+    x, side = _clearest(axes, energy, reach=0.0075 * len(text), points=clear_of)
     axes.annotate(
-        text, (1.0, energy), xycoords=("axes fraction", "data"), xytext=(-3, 3), textcoords="offset points",
-        ha="right", va="bottom", fontsize=8.5, color=QUIET,
-        bbox={"boxstyle": "square,pad=0.1", "facecolor": PAPER, "edgecolor": "none", "alpha": 0.85},
+        text, (x, energy), xycoords=("axes fraction", "data"), xytext=(0, 3 * side), textcoords="offset points",
+        ha="center", va="bottom" if side > 0 else "top", fontsize=8.5, color=QUIET,
+    )  # fmt: skip
+
+
+def _clearest(axes: Any, energy: float, *, reach: float, points: Sequence[Point]) -> tuple[float, int]:
+    """Return the place along a rule, and the side of it, that is farthest from the points: right and above if even."""
+    (left, right), (low, high) = axes.get_xlim(), axes.get_ylim()
+    height = 0.05
+    level = (energy - low) / (high - low)
+    near = [((x - left) / (right - left), (y - low) / (high - low)) for x, y in points]
+    best, found = (1.0 - reach, 1), -1.0
+    for step in range(9):
+        middle = 1.0 - reach - step * (1.0 - 2 * reach) / 8
+        for side in (1, -1):
+            centre = level + side * height
+            misses = [abs(y - centre) for x, y in near if abs(x - middle) < reach + 0.01]
+            clearance = round(min([*misses, 2 * height]), 3)
+            if clearance > found and 0 < centre < 1:
+                best, found = (round(middle, 4), side), clearance
+    return best
+
+
+def end_label(axes: Any, energy: float, text: str) -> None:
+    """Write a rule's value at its right end, outside the axes."""
+    axes.annotate(
+        text, (1.0, energy), xycoords=("axes fraction", "data"), xytext=(4, 0), textcoords="offset points",
+        ha="left", va="center", fontsize=8.5, color=QUIET, annotation_clip=False,
     )  # fmt: skip
