@@ -1,0 +1,27 @@
+"""Names, units and ranges of everything an author may write in a block, and one check that collects every mistake.
+
+A family member (a lattice, a system form, a question) declares a tuple of :class:`Field`; :func:`check` reads a table
+against it and returns the checked parameters, plain JSON, together with every :class:`Problem`.
+"""
+
+from bandbook.errors import Problem
+from bandbook.parameters.field import MOST_CELLS, REQUIRED, Field, describe
+from bandbook.parameters.reading import KINDS, check
+from bandbook.parameters.words import NAME, listed, near, one_of, plain_name, shortened, shown
+
+__all__ = [
+    "KINDS",
+    "MOST_CELLS",
+    "NAME",
+    "REQUIRED",
+    "Field",
+    "Problem",
+    "check",
+    "describe",
+    "listed",
+    "near",
+    "one_of",
+    "plain_name",
+    "shortened",
+    "shown",
+]
