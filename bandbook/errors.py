@@ -50,7 +50,16 @@ class Problem:
     def __str__(self) -> str:
         place = f"{self.file}:{self.line}: " if self.file else ""
         name = key_text(self.key)
-        return f"{place}{name + ': ' if name else ''}{self.found}; {self.allowed}; {self.remedy}"
+        return printable(f"{place}{name + ': ' if name else ''}{self.found}; {self.allowed}; {self.remedy}")
+
+
+def printable(text: str) -> str:
+    r"""Return a text as one line, signs that steer a terminal written out.
+
+    >>> printable("two\nlines")
+    'two\\nlines'
+    """
+    return "".join(sign if sign.isprintable() else sign.encode("unicode_escape").decode() for sign in text)
 
 
 def key_text(key: Iterable[str | int]) -> str:

@@ -10,7 +10,7 @@ from bandbook.cases.sets import ParameterSet, read_parameter_set
 from bandbook.cases.sources import Sources, read_sources
 from bandbook.cases.toml_lines import Key
 from bandbook.errors import Problem
-from bandbook.parameters import near
+from bandbook.parameters import near, shortened
 
 
 @dataclass(frozen=True)
@@ -59,7 +59,7 @@ def _unknown_sources(parameters: ParameterSet, sources: Sources) -> list[Problem
 def source_problem(key: str, sources: Sources) -> Problem:
     """Return the problem of a source that sources.bib lacks."""
     remedy = near(key, sources.entries.keys()) or "add the entry to sources.bib"
-    return Problem(f'unknown source "{key}"', "a source is a key of sources.bib", remedy, ("source",))
+    return Problem(f'unknown source "{shortened(key)}"', "a source is a key of sources.bib", remedy, ("source",))
 
 
 def read_book(root: Path, content: Path) -> Book:

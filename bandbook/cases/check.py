@@ -1,7 +1,6 @@
 """From a Case to checked parameters, all of its author's mistakes at once; nothing is executed."""
 
-import math
-from collections.abc import Collection, Iterator, Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any, Protocol
 
@@ -14,7 +13,7 @@ from bandbook.cases.resolve import ParameterUse, resolve
 from bandbook.cases.toml_lines import Key
 from bandbook.cases.workings import ANY, bound_names
 from bandbook.errors import Problem
-from bandbook.parameters import NAME, near
+from bandbook.parameters import NAME, near, shortened
 
 Checked = dict[str, Any]
 
@@ -100,7 +99,6 @@ class _Desk:
         """Note the problems of a checked block that do not follow from a failed reference; return what is usable."""
         checked, problems = result
         own = [problem for problem in problems if problem.key not in failed]
-        own += [] if own or checked is None else list(_not_plain(checked, ()))
         self.note(block, *own)
         return None if own or failed else checked
 
@@ -206,7 +204,8 @@ def _check_study(desk: _Desk, block: Block) -> None:
     question = block.table.get("question")
     default = question if isinstance(question, str) and NAME.match(question) else ""
     name = _name_of(block, default)
-    if not name or (block.is_broken and "name" not in block.table):
+    is_known = not block.is_broken and bool(desk.vocabulary.quantity_names(default))
+    if not name or ("name" not in block.table and not is_known):
         desk.unnamed += 1
     if name == "workings":
         remedy = "choose another name"
@@ -262,32 +261,16 @@ def _check_front(desk: _Desk) -> dict[str, str]:
     for row, identity in enumerate(front.see):
         if identity not in ids:
             remedy = near(identity, ids) or "remove it"
-            problems.append(Problem(f'unknown case "{identity}"', "ids of cases of this book", remedy, ("see", row)))
+            problems.append(
+                Problem(f'unknown case "{shortened(identity)}"', "ids of cases of this book", remedy, ("see", row))
+            )
     for row, identity in enumerate(front.was):
         if not ID.match(identity):
             allowed = "small letters a to z, digits, points and hyphens, / between folders"
-            problems.append(Problem(f'"{identity}" is no id', allowed, "write the former id", ("was", row)))
+            problems.append(Problem(f'"{shortened(identity)}" is no id', allowed, "write the former id", ("was", row)))
     files, wrong = embedded(front.uses, desk.book)
     for problem in (*problems, *wrong):
         name, number = problem.key[:2]
         line = front.line_of(str(name), number if isinstance(number, int) else -1)
         desk.problems.append(problem.at(desk.case.file, line))
     return files
-
-
-def _not_plain(value: Any, key: Key) -> Iterator[Problem]:
-    """Yield what JSON has no form for: dates, and numbers that are not finite; only free tables let them through."""
-    if isinstance(value, Mapping):
-        for name, entry in value.items():
-            yield from _not_plain(entry, (*key, name))
-    elif isinstance(value, list | tuple):
-        for row, entry in enumerate(value):
-            yield from _not_plain(entry, (*key, row))
-    elif isinstance(value, float) and not math.isfinite(value):
-        yield Problem(f"found the number {value}", "finite numbers", "correct it", key)
-    elif isinstance(value, int) and abs(value) > 2**53:
-        yield Problem(
-            "found a whole number of very many digits", "whole numbers up to 2^53", "write a smaller one", key
-        )
-    elif value is not None and not isinstance(value, str | bool | int | float):
-        yield Problem(f"found the date or time {value}", "numbers and texts", "put it in quotes", key)

@@ -5,6 +5,7 @@ from pathlib import Path, PurePosixPath
 from bandbook.cases.book import Book
 from bandbook.cases.read import read_text
 from bandbook.errors import Problem
+from bandbook.parameters import shortened
 
 _ALLOWED = "text files below the content folder, such as data/gaps.csv"
 
@@ -23,9 +24,11 @@ def embedded(paths: tuple[str, ...], book: Book) -> tuple[dict[str, str], list[P
 
 def _text_of(path: str, content: Path) -> tuple[str | None, list[Problem]]:
     if not _is_inside(path, content):
-        return None, [Problem(f'the path "{path}" leads out of the book', _ALLOWED, "correct the path")]
+        return None, [Problem(f'the path "{shortened(path)}" leads out of the book', _ALLOWED, "correct the path")]
     if str(PurePosixPath(path)) != path or ".." in PurePosixPath(path).parts:
-        return None, [Problem(f'the path "{path}" is roundabout', _ALLOWED, f'write "{_straight(path, content)}"')]
+        return None, [
+            Problem(f'the path "{shortened(path)}" is roundabout', _ALLOWED, f'write "{_straight(path, content)}"')
+        ]
     text, wrong = read_text(content / path)
     return text, [_of_file(path, problem) for problem in wrong]
 
@@ -33,8 +36,8 @@ def _text_of(path: str, content: Path) -> tuple[str | None, list[Problem]]:
 def _of_file(path: str, problem: Problem) -> Problem:
     """Return what is wrong with a file as a problem of the case that names it."""
     if problem.found == "it is no file":
-        return Problem(f'there is no file "{path}"', _ALLOWED, "correct the path, or add the file")
-    return Problem(f'"{path}", line {problem.line}: {problem.found}', problem.allowed, problem.remedy)
+        return Problem(f'there is no file "{shortened(path)}"', _ALLOWED, "correct the path, or add the file")
+    return Problem(f'"{shortened(path)}", line {problem.line}: {problem.found}', problem.allowed, problem.remedy)
 
 
 def _is_inside(path: str, content: Path) -> bool:

@@ -155,7 +155,7 @@ class _Splitter:
         info = " ".join(match[3].split())
         if kind_of(info):
             found = f'the block "{info}" stands inside a list, a quotation or an indented text'
-            remedy = "move it to the left margin; to show a block as an example, put a longer fence around it"
+            remedy = "move it to the left margin, or put a longer fence around an example"
             self.problems.append(Problem(found, "blocks stand at the left margin", remedy).at("", self.first + number))
         return next(ends, number) + 1
 

@@ -7,7 +7,7 @@ from typing import Any, Final, Protocol
 from bandbook.cases.book import Book, source_problem
 from bandbook.cases.toml_lines import Key
 from bandbook.errors import Problem
-from bandbook.parameters import Field, check, near
+from bandbook.parameters import Field, check, listed, near, shortened
 
 _FIELDS: Final = (
     Field("value", "number", "the value"),
@@ -116,7 +116,11 @@ def _origin(checked: Mapping[str, Any], book: Book) -> list[Problem]:
 
 def _form(name: str) -> list[Problem]:
     study, _, quantity = name.partition(".")
-    return [] if study and quantity else [Problem(f'"{name}" names no quantity', _FORM, "write both, with a point")]
+    return (
+        []
+        if study and quantity
+        else [Problem(f'"{shortened(name)}" names no quantity', _FORM, "write both, with a point")]
+    )
 
 
 def _quantity(name: str, promised: Promised) -> list[Problem]:
@@ -125,15 +129,17 @@ def _quantity(name: str, promised: Promised) -> list[Problem]:
     study, _, quantity = name.partition(".")
     if study == "workings":
         remedy = "add a python workings block, or name a study"
-        found = f'"{name}" is reported by workings, and this case has none'
+        found = f'"{shortened(name)}" is reported by workings, and this case has none'
         return [] if promised.has_workings else [Problem(found, "quantities of this case", remedy)]
     if study not in promised.studies:
-        allowed = "studies of this case are " + (", ".join(f'"{one}"' for one in promised.studies) or "none")
+        allowed = "studies of this case are " + (listed([f'"{one}"' for one in promised.studies]) or "none")
         remedy = near(study, promised.studies) or "name one of them"
-        return [Problem(f'"{name}" names no study of this case', allowed, remedy)] if promised.is_whole else []
+        return (
+            [Problem(f'"{shortened(name)}" names no study of this case', allowed, remedy)] if promised.is_whole else []
+        )
     known = promised.studies[study]
     if not known or any(one.fits(quantity) for one in known):
         return []
     patterns = [one.pattern for one in known]
     remedy = near(quantity, patterns) or "use one of them"
-    return [Problem(f'"{study}" has no quantity "{quantity}"', "it gives " + ", ".join(patterns), remedy)]
+    return [Problem(f'"{study}" has no quantity "{shortened(quantity)}"', "it gives " + listed(patterns), remedy)]

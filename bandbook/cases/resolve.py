@@ -6,7 +6,7 @@ from typing import Any, Final
 
 from bandbook.cases.sets import ParameterSet
 from bandbook.errors import Problem, key_text
-from bandbook.parameters import near, one_of
+from bandbook.parameters import listed, near, one_of, shortened
 
 Key = tuple[str | int, ...]
 #: Keys whose text is never a number, except among the arguments of an author's function.
@@ -82,13 +82,13 @@ def _is_word(key: Key) -> bool:
 def _malformed(value: str, sets: Mapping[str, ParameterSet]) -> Problem:
     holding = sorted(name for name, parameters in sets.items() if value[1:].strip() in parameters.values)
     remedy = f'write "@{holding[0]}.{value[1:].strip()}"' if holding else "write the set, a point and the value's name"
-    return Problem(f'"{value}" is no reference to a parameter set', '"@set.name"', remedy)
+    return Problem(f'"{shortened(value)}" is no reference to a parameter set', '"@set.name"', remedy)
 
 
 def _unknown(name: str, parameters: ParameterSet) -> Problem:
     if parameters.problems:
-        found = f'the set "{parameters.name}" gives no value "{name}" and has mistakes of its own'
+        found = f'the set "{parameters.name}" gives no value "{shortened(name)}" and has mistakes of its own'
         return Problem(found, "a value of a set without mistakes", f"correct {parameters.file} first")
-    allowed = f'"{parameters.name}" holds ' + (", ".join(f'"{one}"' for one in parameters.values) or "no value")
+    allowed = f'"{parameters.name}" holds ' + (listed([f'"{one}"' for one in parameters.values]) or "no value")
     remedy = near(name, parameters.values) or "add it to the set"
-    return Problem(f'the set "{parameters.name}" has no value "{name}"', allowed, remedy)
+    return Problem(f'the set "{parameters.name}" has no value "{shortened(name)}"', allowed, remedy)

@@ -58,7 +58,7 @@ def read_toml(source: str, fence: int) -> tuple[dict[str, Any], Lines, list[Prob
             if problems and not re.match(r"\s*[\w\"'.-]+\s*[=:]", lines[number - 1]):
                 break  # what follows from a line that was left out is no mistake of its own
             problems.append(_syntax(str(error), lines[number - 1].strip()).at("", fence + number))
-            if not is_whole_line:
+            if not is_whole_line or lines[number - 1].lstrip().startswith("["):
                 break
             lines[number - 1] = ""
         except (RecursionError, ValueError) as error:

@@ -132,7 +132,7 @@ def _name(field: Field, value: object) -> Checked:
 def _name_remedy(value: object) -> str:
     plain = plain_name(value) if isinstance(value, str) else ""
     if isinstance(value, str) and not value.isascii():
-        return "names keep to the letters a to z, digits and _" + (f'; write "{plain}"' if plain else "")
+        return "keep to the letters a to z, digits and _" + (f', such as "{plain}"' if plain else "")
     return f'write "{plain}"' if plain else "begin with a letter and go on with letters, digits and _"
 
 
