@@ -79,10 +79,12 @@ class BandbookError(Exception):
 
     Attributes:
         step: Number of the notebook step in which it arose, from 1; 0 outside a run.
+        notebook: The notebook as far as it ran, as the bytes of its file; empty outside a run.
     """
 
     exit_status = 1
     step = 0
+    notebook = b""
 
 
 class WorkingsError(BandbookError):

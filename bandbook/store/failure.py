@@ -1,9 +1,10 @@
 """A failure: why a case has no result, kept until its next outcome."""
 
-from dataclasses import asdict, dataclass
+import json
+from dataclasses import asdict, dataclass, fields
 from typing import Any
 
-from bandbook.errors import AuthorError, BandbookError, WorkingsError
+from bandbook.errors import AuthorError, BandbookError, RunError, WorkingsError
 
 
 @dataclass(frozen=True)
@@ -19,6 +20,8 @@ class Failure:
         line: Line of the block in the case file; 0 when unknown.
         source: Source of the failing cell.
         traceback: Traceback as plain text.
+        reason: Of a run that did not end: ``"timed out"``, ``"killed"`` or ``"kernel died"``; otherwise empty.
+        step: Number of the notebook's step, from 1; 0 when unknown.
     """
 
     case: str
@@ -29,6 +32,8 @@ class Failure:
     line: int = 0
     source: str = ""
     traceback: str = ""
+    reason: str = ""
+    step: int = 0
 
     def __str__(self) -> str:
         return self.message
@@ -39,9 +44,36 @@ class Failure:
 
 
 def failure_of(error: BandbookError, *, case: str, key: str, file: str, line: int) -> Failure:
-    """Return an error of a run as the failure of its case."""
-    where = f"{file}:{line}: " if line else f"{file}: "
-    message = str(error) if isinstance(error, AuthorError) and error.problems[0].file else where + str(error)
-    source = error.source if isinstance(error, WorkingsError) else ""
-    traceback = error.traceback if isinstance(error, WorkingsError) else ""
-    return Failure(case, key, type(error).__name__, error.exit_status, message, line, source, traceback)
+    """Return an error of a run as the failure of its case, placed at a line of the case file."""
+    return Failure(
+        case,
+        key,
+        type(error).__name__,
+        error.exit_status,
+        _placed(error, file, line or 1),
+        line,
+        error.source if isinstance(error, WorkingsError) else "",
+        error.traceback if isinstance(error, WorkingsError) else "",
+        error.reason if isinstance(error, RunError) else "",
+        error.step,
+    )
+
+
+def _placed(error: BandbookError, file: str, line: int) -> str:
+    if isinstance(error, AuthorError):
+        return "\n".join(str(problem if problem.file else problem.at(file, line)) for problem in error.problems)
+    return f"{file}:{line}: {error}"
+
+
+def failure_from(data: bytes) -> Failure:
+    """Return a kept failure; what another version wrote beside it is left out.
+
+    Raises:
+        ValueError: The bytes are no failure.
+    """
+    content = json.loads(data)
+    names = {field.name for field in fields(Failure)}
+    try:
+        return Failure(**{name: value for name, value in content.items() if name in names})
+    except (AttributeError, TypeError) as error:
+        raise ValueError(str(error)) from error

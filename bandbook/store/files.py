@@ -4,7 +4,7 @@ import contextlib
 import os
 import tempfile
 from collections.abc import Iterator
-from pathlib import Path
+from pathlib import Path, PurePosixPath
 
 from bandbook.errors import RunError
 
@@ -44,6 +44,17 @@ def sync_folder(folder: Path) -> None:
             os.close(handle)
 
 
+def is_inside(path: str) -> bool:
+    """Return whether a path names something below a folder, and nothing else.
+
+    >>> [is_inside(path) for path in ("figures/bands.svg", "/etc/passwd", "../x", "a/../../x", "c:x", "", "a/.")]
+    [True, False, False, False, False, False, False]
+    """
+    parts = path.split("/")
+    plain = not any(sign in path for sign in ":\\\0")
+    return plain and not PurePosixPath(path).is_absolute() and not {"", ".", ".."} & set(parts)
+
+
 @contextlib.contextmanager
 def as_run_error(path: Path) -> Iterator[None]:
     """Turn what the system refuses into the book's own error.
@@ -62,11 +73,16 @@ def as_run_error(path: Path) -> Iterator[None]:
 
 @contextlib.contextmanager
 def locked(path: Path) -> Iterator[None]:
-    """Hold a lock file while several commands may write."""
+    """Hold a lock file while several commands may write; where the system has no such locks, do without.
+
+    Raises:
+        RunError: The lock file cannot be made.
+    """
     with as_run_error(path):
         path.parent.mkdir(parents=True, exist_ok=True)
-        file = path.open("a")
+        file = path.open("ab")
     with file:
         if fcntl is not None:
-            fcntl.flock(file, fcntl.LOCK_EX)
+            with contextlib.suppress(OSError):  # some network disks know no locks
+                fcntl.flock(file, fcntl.LOCK_EX)
         yield

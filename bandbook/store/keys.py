@@ -25,8 +25,9 @@ KERNEL_PARTS: Final = (
     "solver",
     "systems",
 )
-#: Raised when composing or harvesting a notebook changes what a result holds.
+#: Raised when composing, running or harvesting a notebook changes what a result holds.
 COMPOSE_FORMAT: Final = 1
+#: Whose versions a key covers; ``environment`` lists exactly these, Python and bandbook itself.
 PACKAGES: Final = ("numpy", "scipy", "matplotlib")
 
 
@@ -35,6 +36,7 @@ def canonical_json(value: Any) -> bytes:
 
     Raises:
         ValueError: A number is not finite.
+        TypeError: Something is not plain JSON.
 
     >>> canonical_json({"b": 1.0, "a": -0.0})
     b'{"a":0,"b":1}'
@@ -47,27 +49,46 @@ def _plain(value: Any) -> Any:
         return {str(key): _plain(entry) for key, entry in value.items()}
     if isinstance(value, list | tuple):
         return [_plain(entry) for entry in value]
-    if isinstance(value, float) and math.isfinite(value) and value.is_integer() and abs(value) < 2**53:
+    if isinstance(value, float) and math.isfinite(value) and value.is_integer():
         return int(value)
     return value
 
 
 def digest(data: bytes) -> str:
-    """Return ``sha256:…`` of some bytes."""
+    """Return ``sha256:…`` of some bytes.
+
+    >>> digest(b"")[:20]
+    'sha256:e3b0c44298fc1'
+    """
     return "sha256:" + hashlib.sha256(data).hexdigest()
 
 
-@cache
+def kernel_sources() -> list[Path]:
+    """Return the files that a kernel runs, in the order of their names."""
+    folder = Path(bandbook.__file__).parent
+    single = [folder / f"{part}.py" for part in KERNEL_PARTS]
+    folders = [path for part in KERNEL_PARTS for path in (folder / part).rglob("*.py")]
+    return sorted([*(path for path in single if path.is_file()), *folders])
+
+
 def code_digest() -> str:
-    """Return the digest of the sources that a kernel runs."""
+    """Return the digest of the sources that a kernel runs.
+
+    A file that has not been touched is not read again, so that a server that runs for days sees an edit at once.
+    """
     folder = Path(bandbook.__file__).parent
     lines = []
-    for part in KERNEL_PARTS:
-        single = folder / f"{part}.py"
-        for path in [single] if single.is_file() else sorted((folder / part).rglob("*.py")):
-            source = path.read_bytes().replace(b"\r\n", b"\n")
-            lines.append(f"{path.relative_to(folder).as_posix()} {digest(source)}")
+    for path in kernel_sources():
+        state = path.stat()
+        lines.append(f"{path.relative_to(folder).as_posix()} {_source(path, state.st_mtime_ns, state.st_size)}")
     return digest("\n".join(lines).encode())
+
+
+@cache
+def _source(path: Path, touched: int, size: int) -> str:
+    """Return the digest of a source with plain line ends; ``touched`` and ``size`` tell whether to read it again."""
+    del touched, size
+    return digest(path.read_bytes().replace(b"\r\n", b"\n"))
 
 
 @cache

@@ -7,6 +7,7 @@ from pathlib import Path
 from typing import Any
 
 from bandbook.errors import IntegrityError
+from bandbook.store.files import is_inside
 from bandbook.store.keys import canonical_json, digest
 
 RESULT_FILE = "result.json"
@@ -20,7 +21,8 @@ class Result:
     Attributes:
         key: ``sha256:…``.
         quantities: As ``result.json`` has them.
-        exhibits: Figures, tables and texts in the order of the notebook; a table carries its ``html``.
+        exhibits: Figures, tables and texts in the order of the notebook; a table carries its ``html``, a text its
+            ``text``, each the ``step`` of the notebook that gave it.
         warnings: ``{"study", "text"}`` each.
         inputs: Digest of each input.
         environment: Versions.
@@ -51,21 +53,26 @@ def read_result(folder: Path, key: str) -> Result:
         IntegrityError: Something is missing, damaged, or belongs to another key.
     """
     try:
-        whole = json.loads((folder / RESULT_FILE).read_bytes())
-        content = {name: value for name, value in whole.items() if name != "digest"}
-        ours = whole["digest"] == digest(canonical_json(content)) and whole["key"] == key
-        damaged = [path for path, value in whole["files"].items() if digest((folder / path).read_bytes()) != value]
-    except (OSError, ValueError, KeyError, AttributeError, TypeError) as error:
+        raw = (folder / RESULT_FILE).read_bytes()
+        content = {name: value for name, value in json.loads(raw).items() if name != "digest"}
+        ours = raw == result_bytes(content) and content["key"] == key
+        damaged = [path for path, value in content["files"].items() if not _is_whole(folder, path, value)]
+        result = Result(
+            key,
+            tuple(content["quantities"]),
+            tuple(content["exhibits"]),
+            tuple(content["warnings"]),
+            content["inputs"],
+            content["environment"],
+            content["files"],
+            folder,
+        )
+    except (OSError, ValueError, KeyError, AttributeError, TypeError, RecursionError) as error:
         raise IntegrityError(f"result {folder.name} cannot be read ({type(error).__name__})") from error
     if not ours or damaged:
         raise IntegrityError(f"result {folder.name}: {', '.join(damaged) or RESULT_FILE} is not what its digest says")
-    return Result(
-        key,
-        tuple(content["quantities"]),
-        tuple(content["exhibits"]),
-        tuple(content["warnings"]),
-        content["inputs"],
-        content["environment"],
-        content["files"],
-        folder,
-    )
+    return result
+
+
+def _is_whole(folder: Path, path: str, value: str) -> bool:
+    return is_inside(path) and (folder / path).is_file() and digest((folder / path).read_bytes()) == value

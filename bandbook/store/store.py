@@ -1,18 +1,21 @@
 """The store: results by key, the last key of each case, failures; every write whole or not at all."""
 
+import contextlib
 import json
-import os
 import shutil
-import tempfile
 from collections.abc import Mapping
 from pathlib import Path
-from typing import Any, Protocol
+from typing import Any, Final, Protocol
 
-from bandbook.errors import BandbookError, IntegrityError
-from bandbook.store.failure import Failure, failure_of
-from bandbook.store.files import as_run_error, locked, sync_folder, write_file
+from bandbook.errors import BandbookError, IntegrityError, RunError
+from bandbook.store.failure import Failure, failure_from, failure_of
+from bandbook.store.files import as_run_error, is_inside, locked, sync_folder, write_file
 from bandbook.store.keys import digest, environment, inputs_of
 from bandbook.store.result import RESULT_FILE, RUN_FILE, Result, read_result, result_bytes
+from bandbook.store.scratch import clear_scratch, new_scratch
+
+#: Longest name of a failure's file; a longer one gives way to its digest.
+_LONGEST_NAME: Final = 150
 
 
 class Harvested(Protocol):
@@ -67,28 +70,57 @@ class Store:
             return None
         try:
             return read_result(folder, key)
-        except IntegrityError as error:
-            self._set_aside(folder, str(error))
-            return None
+        except IntegrityError:
+            return self._second_look(folder, key)
+
+    def _second_look(self, folder: Path, key: str) -> Result | None:
+        """Read once more while nobody writes, and set aside what is damaged all the same."""
+        reason = f"result {folder.name} is damaged"
+        try:
+            with locked(self.root / "lock"):
+                if not folder.is_dir():
+                    return None
+                try:
+                    return read_result(folder, key)
+                except IntegrityError as error:
+                    reason = str(error)
+                self.set_aside.append(f"{reason}; {self._move_aside(folder)}")
+        except RunError as error:
+            self.set_aside.append(f"{reason}; it is computed again and could not be set aside ({error})")
+        return None
+
+    def _move_aside(self, folder: Path) -> str:
+        number = 1
+        while (target := self.root / "damaged" / f"{folder.name}-{number}").exists():
+            number += 1
+        with as_run_error(target):
+            target.parent.mkdir(parents=True, exist_ok=True)
+            folder.rename(target)
+        return f"a result is read only when every byte is right; it was set aside in damaged/{target.name}, run again"
 
     def put(self, key: str, parameters: Mapping[str, Any], harvest: Harvested) -> Result:
         """Keep what a run gave and return it; a second writer of the same key is welcome.
 
         Raises:
             RunError: The disk is full, or the store cannot be written.
+            IntegrityError: A file would lie outside the result's folder, or cannot be read back as it was written.
         """
+        outside = [path for path in harvest.files if not is_inside(path)]
+        if outside:
+            found = f"a result with a file at {outside[0]!r}"
+            raise IntegrityError(f"{found}; its files lie below its own folder; rename what the workings display")
         self._prepare()
         target = self.folder(key)
         with as_run_error(target):
             target.parent.mkdir(parents=True, exist_ok=True)
-            folder = Path(tempfile.mkdtemp(dir=self.root / "tmp", prefix=f"{os.getpid()}-"))
+            folder = new_scratch(self.root / "tmp")
         try:
             self._write(folder, key, parameters, harvest)
-            with as_run_error(target):
+            with locked(self.root / "lock"), as_run_error(target):
                 self._publish(folder, target)
+                return read_result(target, key)
         finally:
             shutil.rmtree(folder, ignore_errors=True)
-        return read_result(target, key)
 
     @staticmethod
     def _write(folder: Path, key: str, parameters: Mapping[str, Any], harvest: Harvested) -> None:
@@ -105,22 +137,25 @@ class Store:
             "files": {path: digest(data) for path, data in sorted(harvest.files.items())},
         }
         write_file(folder / RESULT_FILE, result_bytes(content))
-        write_file(folder / RUN_FILE, (json.dumps(harvest.run, indent=1, sort_keys=True) + "\n").encode())
-        for inner in sorted({path.parent for path in folder.rglob("*")} | {folder}):
-            sync_folder(inner)
+        write_file(folder / RUN_FILE, _as_json(harvest.run))
+        with as_run_error(folder):
+            for inner in sorted({path.parent for path in folder.rglob("*")} | {folder}):
+                sync_folder(inner)
 
     @staticmethod
     def _publish(folder: Path, target: Path) -> None:
+        """Rename a finished folder to its place; what stood there goes, or comes back when that fails."""
+        previous = folder.with_name(folder.name + "-previous")
+        if target.exists():
+            target.rename(previous)
         try:
             folder.rename(target)
         except OSError:
-            if not target.is_dir():
-                raise
-            previous = folder.with_name(folder.name + "-previous")
-            target.rename(previous)
-            folder.rename(target)
-            shutil.rmtree(previous, ignore_errors=True)
+            if previous.exists():
+                previous.rename(target)
+            raise
         sync_folder(target.parent)
+        shutil.rmtree(previous, ignore_errors=True)
 
     def _prepare(self) -> None:
         """Make the store's folders, its ``.gitignore``, and clear what dead processes left unfinished."""
@@ -129,28 +164,19 @@ class Store:
             write_file(ignore, b"*\n")
         with as_run_error(self.root):
             (self.root / "tmp").mkdir(exist_ok=True)
-        for path in (self.root / "tmp").iterdir():
-            owner = path.name.split("-")[0]
-            if not owner.isdigit() or not _is_alive(int(owner)):
-                shutil.rmtree(path, ignore_errors=True)
-
-    def _set_aside(self, folder: Path, reason: str) -> None:
-        number = 1
-        while (target := self.root / "damaged" / f"{folder.name}-{number}").exists():
-            number += 1
-        with as_run_error(target):
-            target.parent.mkdir(parents=True, exist_ok=True)
-            folder.rename(target)
-        self.set_aside.append(f"{reason}; it was set aside in damaged/{target.name} and is computed again")
+            clear_scratch(self.root / "tmp")
 
     def remember(self, case: str, key: str) -> None:
-        """Write down the last key of a case."""
-        path = self.root / "cases.json"
+        """Write down the last key of a case.
+
+        Raises:
+            RunError: The disk is full, or the store cannot be written.
+        """
+        if self.latest(case) == key:
+            return
         self._prepare()
         with locked(self.root / "lock"):
-            keys = self._keys()
-            if keys.get(case) != key:
-                write_file(path, (json.dumps({**keys, case: key}, indent=1, sort_keys=True) + "\n").encode())
+            write_file(self.root / "cases.json", _as_json({**self._keys(), case: key}))
 
     def latest(self, case: str) -> str | None:
         """Return the last key of a case."""
@@ -164,32 +190,45 @@ class Store:
         return {str(case): str(key) for case, key in keys.items()} if isinstance(keys, dict) else {}
 
     def keep_failure(self, error: BandbookError, *, case: str, key: str, file: str, line: int) -> Failure:
-        """Keep why a case has no result, with the notebook as far as it ran, and return it."""
+        """Keep why a case has no result, with its notebook as far as it ran, and return it.
+
+        On a full disk it is returned all the same: one failing case never stops the others.
+        """
         failure = failure_of(error, case=case, key=key, file=file, line=line)
-        self._prepare()
-        write_file(self._failure_path(case), (json.dumps(failure.as_dict(), indent=1, sort_keys=True) + "\n").encode())
+        with contextlib.suppress(RunError):
+            self._prepare()
+            self.forget_failure(case)
+            if error.notebook:
+                write_file(self._failure_path(case, "ipynb"), error.notebook)
+            write_file(self._failure_path(case, "json"), _as_json(failure.as_dict()))
         return failure
 
     def failure(self, case: str) -> Failure | None:
         """Return the kept failure of a case."""
         try:
-            return Failure(**json.loads(self._failure_path(case).read_bytes()))
-        except (OSError, ValueError, TypeError):
+            return failure_from(self._failure_path(case, "json").read_bytes())
+        except (OSError, ValueError):
+            return None
+
+    def failed_notebook(self, case: str) -> bytes | None:
+        """Return the notebook of a case that failed, as far as it ran."""
+        try:
+            return self._failure_path(case, "ipynb").read_bytes()
+        except OSError:
             return None
 
     def forget_failure(self, case: str) -> None:
-        """Forget the failure of a case that has a result now."""
-        self._failure_path(case).unlink(missing_ok=True)
+        """Forget the failure of a case, where the disk can be written."""
+        for ending in ("json", "ipynb"):
+            with contextlib.suppress(OSError):
+                self._failure_path(case, ending).unlink(missing_ok=True)
 
-    def _failure_path(self, case: str) -> Path:
-        return self.root / "failed" / f"{case.replace('/', '+')}.json"
+    def _failure_path(self, case: str, ending: str) -> Path:
+        name = case.replace("/", "+")  # no id has a plus
+        if len(name) > _LONGEST_NAME:
+            name = digest(case.encode()).removeprefix("sha256:")
+        return self.root / "failed" / f"{name}.{ending}"
 
 
-def _is_alive(process: int) -> bool:
-    try:
-        os.kill(process, 0)
-    except ProcessLookupError:
-        return False
-    except OSError:
-        return True
-    return True
+def _as_json(content: Mapping[str, Any]) -> bytes:
+    return (json.dumps(content, indent=1, sort_keys=True) + "\n").encode()
