@@ -62,7 +62,8 @@ STYLE: Final[dict[str, Any]] = {
 WIDTH: Final = 6.4
 _TAG: Final = re.compile(r"<[^>]*>")
 _NUMBER: Final = re.compile(r"-?\d+\.\d{3,}")
-_ID: Final = re.compile(r'(\bid="|href="#|url\(#)')
+_ID: Final = re.compile(r'(\bid="|href="#|url\(#)([^")]+)')
+_UPRIGHT: Final = re.compile(r' transform="rotate\(-?0 [^"]*"')
 _FONT: Final = re.compile(r"'DejaVu Sans'(?:, [^;\"]*)?")
 
 Point = tuple[float, float]
@@ -113,7 +114,9 @@ def finished(svg: str, prefix: str, alt: str) -> str:
         alt: What the figure shows.
     """
     svg = re.sub(r"<metadata>.*?</metadata>\s*", "", svg[svg.index("<svg") :], flags=re.DOTALL)
-    svg = _TAG.sub(lambda tag: _in_house(tag[0], prefix), svg)
+    numbers: dict[str, int] = {}  # names that matplotlib makes from unrounded coordinates would show their last bits
+    svg = _ID.sub(lambda use: f"{use[1]}{prefix}-{numbers.setdefault(use[2], len(numbers) + 1)}", svg)
+    svg = _TAG.sub(lambda tag: _in_house(tag[0]), svg)
     box = re.search(r'viewBox="[^"]+"', svg)
     head = f'<svg xmlns="http://www.w3.org/2000/svg" xmlns:xlink="http://www.w3.org/1999/xlink" {box[0] if box else ""}'
     label = f' role="img" aria-label="{html.escape(alt)}" data-figure="{html.escape(prefix)}">'
@@ -121,13 +124,12 @@ def finished(svg: str, prefix: str, alt: str) -> str:
     return re.sub(r"<svg[^>]*>", lambda _: head + label + title, svg, count=1)
 
 
-def _in_house(tag: str, prefix: str) -> str:
-    """Return a tag with properties for colours and font, short numbers, and ids of this figure."""
+def _in_house(tag: str) -> str:
+    """Return a tag with properties for colours and font, and short numbers."""
     for sentinel, prop, light in COLOURS.values():
         tag = re.sub(sentinel, f"var({prop}, {light})", tag, flags=re.IGNORECASE)
     tag = _NUMBER.sub(lambda number: f"{round(float(number[0]), 2) + 0.0:.2f}".rstrip("0").rstrip("."), tag)
-    tag = _FONT.sub("var(--bb-font, sans-serif)", tag)
-    return _ID.sub(lambda start: f"{start[0]}{prefix}-", tag)
+    return _UPRIGHT.sub("", _FONT.sub("var(--bb-font, sans-serif)", tag))
 
 
 def energy_axis(axes: Any, *, beta: float | None, alpha: float = 0.0) -> None:
