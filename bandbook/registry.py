@@ -8,7 +8,7 @@ from bandbook.errors import AuthorError, PhysicsError, Problem
 from bandbook.exhibits import Answer, QuantityName
 from bandbook.lattices import LATTICES
 from bandbook.model import Model
-from bandbook.parameters import NAME, Field, check, one_of, shown
+from bandbook.parameters import NAME, Field, check, listed, near, one_of, shortened, shown
 from bandbook.systems import FORMS, Form
 
 LATTICE_NAMES = tuple(lattice.name for lattice in LATTICES)
@@ -70,28 +70,61 @@ def check_system(given: Mapping[str, Any]) -> tuple[dict[str, Any] | None, list[
 
     Returns:
         The checked parameters with their ``form``, or ``None`` when something is wrong; and every problem.
+
+    >>> check_system({"lattice": "chian"})[1][0].remedy
+    'did you mean "chain"?'
     """
-    forms = [form for form in FORMS if form.key in given]
+    forms = _forms_of(given)
     if len(forms) != 1:
         return None, [_form_problem(given, forms)]
     form = forms[0]
-    checked, problems = check(form.fields(given), given)
-    if form.key == "lattice" and isinstance(given["lattice"], str) and given["lattice"] not in LATTICE_NAMES:
-        return None, [one_of(given["lattice"], LATTICE_NAMES, "lattice").below("lattice")]
-    problems = problems or form.inspect(checked)
+    fields = form.fields(given)
+    if form.key == "lattice" and given["lattice"] not in LATTICE_NAMES:
+        given = {field.name: given[field.name] for field in fields if field.name in given}
+    checked, problems = check(fields, given)
+    problems += form.inspect(checked)
     if problems:
         return None, problems
     checked.pop("name", None)
     return {"form": form.name, **checked}, []
 
 
+def _forms_of(given: Mapping[str, Any]) -> list[Form]:
+    """Return the forms whose keys are there; a key that another form has as a field of its own tells nothing.
+
+    The ``sites`` of a ring are a whole number, those of a system written out a list.
+    """
+    forms = [form for form in FORMS if form.key in given]
+    if len(forms) < 2:
+        return forms
+    fields = {form.key: {field.name for field in form.fields(given)} for form in forms}
+    return [
+        form
+        for form in forms
+        if not any(form.key in fields[other.key] for other in forms if other is not form)
+        and not (form.key == "sites" and isinstance(given["sites"], int))
+    ]
+
+
 def _form_problem(given: Mapping[str, Any], forms: Sequence[Form]) -> Problem:
     keys = ", ".join(f'"{form.key}" ({form.meaning})' for form in FORMS)
     if forms:
-        found = "a system of two forms at once: " + " and ".join(f'"{form.key}"' for form in forms)
+        number = "two" if len(forms) == 2 else "several"
+        found = f"a system of {number} forms at once: " + " and ".join(f'"{form.key}"' for form in forms)
         return Problem(found, f"one of {keys}", "keep one of them", (forms[-1].key,))
-    found = "a system of no known form" if given else "an empty system"
-    return Problem(found, f"one of {keys}", "add one of these keys")
+    if not given:
+        return Problem("an empty system", f"one of {keys}", "add one of these keys")
+    likely = next((key for key in given if near(key, [form.key for form in FORMS])), None)
+    if likely is not None:
+        remedy = near(likely, [form.key for form in FORMS])
+        return Problem(f'unknown key "{shortened(likely)}"', f"a system has one of {keys}", remedy, (likely,))
+    return Problem("a system of no known form", f"one of {keys}", f'add "{_likely_key(given)}"')
+
+
+def _likely_key(given: Mapping[str, Any]) -> str:
+    """Return the key of the form whose other keys are there."""
+    own = {"sites": {"vectors", "couplings"}, "built_by": {"with"}}
+    return next((key for key, names in own.items() if names & set(given)), "lattice")
 
 
 def check_study(
@@ -107,13 +140,13 @@ def check_study(
         The checked parameters with ``question`` and ``system``, or ``None``; and every problem.
     """
     question = given.get("question")
+    system, found = _system_of(given, systems)
     if not isinstance(question, str):
-        return None, [_question_problem(given)]
+        return None, [_question_problem(given), *found]
     if question not in QUESTION_NAMES:
-        return None, [one_of(question, QUESTION_NAMES, "question").below("question")]
+        return None, [one_of(question, QUESTION_NAMES, "question").below("question"), *found]
     analysis = analysis_of(question)
     checked, problems = check((*_STUDY, *analysis.fields), given)
-    system, found = _system_of(given, systems)
     problems += found
     checked["system"] = system
     if problems or system is None:
@@ -138,7 +171,7 @@ def _system_of(
         return next(iter(systems)), []
     if name is None and systems:
         found = f"the case has {len(systems)} systems and the study names none"
-        return None, [Problem(found, "systems are " + ", ".join(f'"{key}"' for key in systems), 'add system = "…"')]
+        return None, [Problem(found, "systems are " + listed([f'"{key}"' for key in systems]), 'add system = "…"')]
     if name is None or not isinstance(name, str) or not NAME.match(name):
         return None, []
     return (name, []) if name in systems else (None, [one_of(name, list(systems), "system").below("system")])
@@ -148,7 +181,7 @@ def _model_of(checked: Mapping[str, Any] | None) -> Model | None:
     """Return the model that a check may look at; ``None`` where workings build it, it is large, or has mistakes."""
     if checked is None or checked["form"] == "built-by":
         return None
-    if isinstance(checked.get("sites"), int) and checked["sites"] > MOST_CHECKED_SITES:
+    if checked["form"] == "named-lattice" and checked.get("sites", 0) > MOST_CHECKED_SITES:
         return None
     try:
         return build_system(checked, {})

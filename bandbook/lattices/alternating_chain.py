@@ -1,12 +1,8 @@
 """The alternating chain: E(k) = α ± √(β₁² + β₂² + 2β₁β₂ cos k)."""
 
 from bandbook.lattices.diatomic_chain import diatomic_chain
-from bandbook.lattices.lattice import ALPHA, PERIOD, Lattice
+from bandbook.lattices.lattice import ALPHA, BETA_BETWEEN, BETA_INSIDE, PERIOD, Lattice
 from bandbook.model import Model
-from bandbook.parameters import Field
-
-BETA_INSIDE = Field("beta_inside", "number", "resonance integral of the bond inside the cell, A–B", unit="eV")
-BETA_BETWEEN = Field("beta_between", "number", "resonance integral of the bond to the next cell, B–A", unit="eV")
 
 
 def alternating_chain(

@@ -1,17 +1,17 @@
 """The diatomic chain: E(k) = ᾱ ± √(h² + β₁² + β₂² + 2β₁β₂ cos k), h = (α_A − α_B)/2."""
 
-from bandbook.lattices.lattice import ALPHA, PERIOD, SQRT3, Lattice, along_x
-from bandbook.model import Coupling, Model, Site
-from bandbook.parameters import Field
-
-FIELDS = (
-    Field("beta_inside", "number", "resonance integral of the bond inside the cell, A–B", unit="eV"),
-    Field("beta_between", "number", "resonance integral of the bond to the next cell, B–A", unit="eV"),
-    Field("alpha_a", "number", "Coulomb integral of A (default: alpha)", unit="eV", default=None),
-    Field("alpha_b", "number", "Coulomb integral of B (default: alpha)", unit="eV", default=None),
-    ALPHA,
+from bandbook.lattices.lattice import (
+    ALPHA_A,
+    ALPHA_B,
+    ALPHA_REST,
+    BETA_BETWEEN,
+    BETA_INSIDE,
     PERIOD,
+    SQRT3,
+    Lattice,
+    along_x,
 )
+from bandbook.model import Coupling, Model, Site
 
 
 def diatomic_chain(
@@ -55,7 +55,7 @@ DIATOMIC_CHAIN = Lattice(
     "chain of two kinds of site and of bond",
     1,
     "A, B along the chain",
-    FIELDS,
+    (BETA_INSIDE, BETA_BETWEEN, ALPHA_A, ALPHA_B, ALPHA_REST, PERIOD),
     diatomic_chain,
     note="An open piece starts and ends with the bond inside.",
 )

@@ -1,11 +1,7 @@
 """The honeycomb sheet: E(k) = α ± |β| |1 + e^{ik₁} + e^{ik₂}|."""
 
-from bandbook.lattices.lattice import ALPHA, BETA, BOND_LENGTH, SQRT3, Lattice
+from bandbook.lattices.lattice import ALPHA_A, ALPHA_B, ALPHA_REST, BETA, BOND_LENGTH, SQRT3, Lattice
 from bandbook.model import Coupling, Model, Site
-from bandbook.parameters import Field
-
-ALPHA_A = Field("alpha_a", "number", "Coulomb integral of A (default: alpha)", unit="eV", default=None)
-ALPHA_B = Field("alpha_b", "number", "Coulomb integral of B (default: alpha)", unit="eV", default=None)
 
 
 def honeycomb(
@@ -47,6 +43,6 @@ HONEYCOMB = Lattice(
     "honeycomb sheet, two sites a cell",
     2,
     "A, B the two sublattices",
-    (BETA, BOND_LENGTH, ALPHA, ALPHA_A, ALPHA_B),
+    (BETA, BOND_LENGTH, ALPHA_REST, ALPHA_A, ALPHA_B),
     honeycomb,
 )

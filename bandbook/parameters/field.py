@@ -68,6 +68,11 @@ class Field:
         """Whether the key must be given."""
         return isinstance(self.default, str) and self.default == REQUIRED
 
+    @property
+    def is_bounded_by_size(self) -> bool:
+        """Whether the range only keeps out numbers of absurd size; a message names it where it was left."""
+        return self.most is not None and self.least == -self.most
+
 
 def describe(field: Field) -> str:
     """Return what a field allows, in words.
@@ -79,13 +84,9 @@ def describe(field: Field) -> str:
     if field.unit:
         text += f" in {field.unit}"
     if field.above is not None:
-        text += f", above {_bound(field.above)}"
-    if field.least is not None and field.most is not None:
-        text += f", {_bound(field.least)} to {_bound(field.most)}"
-    elif field.least is not None:
-        text += f", {_bound(field.least)} or more"
-    elif field.most is not None:
-        text += f", {_bound(field.most)} or less"
+        text += f", above {bound(field.above)}"
+    if not field.is_bounded_by_size:
+        text += _range(field.least, field.most)
     if field.nonzero:
         text += ", not 0"
     if field.choices:
@@ -93,5 +94,16 @@ def describe(field: Field) -> str:
     return text
 
 
-def _bound(value: float) -> str:
+def bound(value: float) -> str:
+    """Return a bound as messages write it.
+
+    >>> bound(10**7), bound(-0.5)
+    ('10,000,000', '-0.5')
+    """
     return f"{value:,.10g}"
+
+
+def _range(least: float | None, most: float | None) -> str:
+    if least is None:
+        return "" if most is None else f", {bound(most)} or less"
+    return f", {bound(least)} or more" if most is None else f", {bound(least)} to {bound(most)}"

@@ -7,7 +7,7 @@ from dataclasses import replace
 from typing import Any, Final
 
 from bandbook.errors import Problem
-from bandbook.parameters.field import MOST_CELLS, Field, describe
+from bandbook.parameters.field import MOST_CELLS, Field, bound, describe
 from bandbook.parameters.words import NAME, listed, near, plain_name, shortened, shown
 
 #: Whole numbers up to here are exact as floats and in JSON.
@@ -85,8 +85,14 @@ def _number(field: Field, value: object) -> Checked:
     if isinstance(value, bool) or not isinstance(value, int | float) or not _is_finite(value):
         return _wrong(field, value)
     if not _in_range(field, value):
-        return _wrong(field, value)
+        return _wrong(field, value, _size_remedy(field) if value else "")
     return float(value) + 0.0, []
+
+
+def _size_remedy(field: Field) -> str:
+    if field.most is None or not field.is_bounded_by_size:
+        return ""
+    return f"write a number from {bound(-field.most)} to {bound(field.most)}"
 
 
 def _is_finite(value: float) -> bool:

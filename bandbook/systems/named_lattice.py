@@ -6,7 +6,16 @@ from typing import Any
 from bandbook.lattices import LATTICES, Lattice
 from bandbook.model import Model
 from bandbook.parameters import Field, Problem, one_of
-from bandbook.systems.form import COMMON, Builders, Checked, Form, problems_of, with_common
+from bandbook.systems.form import (
+    COMMON,
+    Builders,
+    Checked,
+    Form,
+    electron_problems,
+    is_complete,
+    problems_of,
+    with_common,
+)
 
 _LATTICE = Field("lattice", "text", "name of the lattice")
 
@@ -24,25 +33,25 @@ def fields(given: Mapping[str, Any]) -> tuple[Field, ...]:
 
 def inspect(checked: Checked) -> list[Problem]:
     """Return an unknown lattice, or what its builder refuses; a ring is not built, its fields say everything."""
-    lattice = lattice_named(checked["lattice"])
+    name = checked["lattice"]
+    lattice = lattice_named(name)
     if lattice is None:
-        return [one_of(str(checked["lattice"]), [lattice.name for lattice in LATTICES], "lattice").below("lattice")]
-    if lattice.name == "ring":
-        return _ring_electrons(checked)
+        known = [lattice.name for lattice in LATTICES]
+        return [] if name is None else [one_of(name, known, "lattice").below("lattice")]
+    if not is_complete((*lattice.fields, *COMMON), checked):
+        return []
+    if lattice.dimension == 0:
+        return electron_problems(checked, n_sites=checked["sites"], own=checked["sites"])
     return problems_of(checked, build)
 
 
-def _ring_electrons(checked: Checked) -> list[Problem]:
-    sites = checked["sites"]
-    given = checked["electrons"]
-    electrons = (sites if given is None else given) - checked["charge"]
-    if 0 <= electrons <= 2 * sites:
-        return []
-    return [Problem(f"{electrons} electrons on {sites} sites", f"0 to {2 * sites} fit", "correct electrons or charge")]
-
-
 def build(checked: Checked, builders: Builders) -> Model:  # noqa: ARG001 - one signature for every form
-    """Return the Model of a checked named lattice."""
+    """Return the Model of a checked named lattice.
+
+    Raises:
+        AuthorError: The electrons do not fit on the sites.
+        PhysicsError: The builder refuses the fields.
+    """
     lattice = lattice_named(checked["lattice"])
     assert lattice is not None  # noqa: S101 - the check refused every other name
     arguments = {field.name: checked[field.name] for field in lattice.fields}
