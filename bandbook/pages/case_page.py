@@ -1,5 +1,6 @@
 """One case's page: the first screen, the author's text with results in place, provenance."""
 
+import html
 import json
 from collections.abc import Collection, Mapping
 from typing import Any
@@ -7,7 +8,7 @@ from typing import Any
 from bandbook.cases import Block, Prose
 from bandbook.pages.links import adjusted
 from bandbook.pages.page import CaseView
-from bandbook.pages.sections import BLOCKS, BOTTOM, TOP
+from bandbook.pages.sections import AFTER_BLOCK, BLOCKS, BOTTOM, BROKEN, TOP
 from bandbook.pages.templates import render
 
 
@@ -22,21 +23,28 @@ def case_page(view: CaseView, *, ids: Collection[str], override: Any = None) -> 
 
 
 def front_matter(title: str, view: CaseView | None = None) -> str:
-    """Return a page's front matter: its title, and for a case what its page is about."""
-    facts: dict[str, Any] = {"title": title}
+    """Return a page's front matter: its title as HTML, which is how MkDocs takes it, and what the page is about."""
+    facts: dict[str, Any] = {"title": html.escape(title, quote=False)}
     if view is not None:
-        facts |= {"case": view.id, "status": view.status}
-    return (
-        "---\n" + "".join(f"{key}: {json.dumps(value, ensure_ascii=False)}\n" for key, value in facts.items()) + "---"
-    )
+        facts |= {"case": view.id, "run": view.status}
+    lines = [f"{key}: {json.dumps(value, ensure_ascii=False)}\n" for key, value in facts.items()]
+    return "---\n" + "".join(lines) + "---"
 
 
 def heading(title: str) -> str:
-    """Return a title as Markdown heading in which nothing has a meaning of its own."""
-    escaped = "".join(
-        f"\\{sign}" if sign in "\\`*_{}[]()#+-.!|<>&" and sign not in "<>&-.()" else sign for sign in title
-    )
-    return "# " + escaped.replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;")
+    r"""Return a title as Markdown heading in which nothing has a meaning of its own.
+
+    >>> print(heading("a_b <i> 2:1"))
+    # a\_b &lt;i&gt; 2&#58;1
+    """
+    return "# " + "".join(_escaped(sign) for sign in title)
+
+
+def _escaped(sign: str) -> str:
+    """Return one sign of a title: a backslash where every Markdown knows it, otherwise an entity."""
+    if sign in "\\`*_{}[]#+!":
+        return f"\\{sign}"
+    return f"&#{ord(sign)};" if sign in "|~^=:$" else html.escape(sign, quote=False)
 
 
 def _prose(view: CaseView, part: Prose, ids: Collection[str]) -> str:
@@ -45,8 +53,9 @@ def _prose(view: CaseView, part: Prose, ids: Collection[str]) -> str:
 
 
 def _block(view: CaseView, block: Block, override: Any) -> str:
-    name, facts = BLOCKS[block.kind]
-    return _section(name, facts(view, block), override)
+    is_unreadable = block.is_broken and block.kind != "workings"
+    parts = [BROKEN if is_unreadable else BLOCKS[block.kind], AFTER_BLOCK]
+    return "\n\n".join(filter(None, (_section(name, facts(view, block), override) for name, facts in parts)))
 
 
 def _section(name: str, facts: Mapping[str, Any] | None, override: Any) -> str:

@@ -1,6 +1,6 @@
 """What pages are made from: a book and, for each case, what became of it."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 from bandbook.cases import Book, CheckedCase
@@ -20,6 +20,7 @@ class CaseView:
         record: Its record, when it has one.
         failure: Why it has none.
         problems: Every mistake, placed.
+        related: Id and title of each case that its author points to and that has a page.
     """
 
     checked: CheckedCase
@@ -28,6 +29,7 @@ class CaseView:
     record: Record | None = None
     failure: Failure | None = None
     problems: tuple[Problem, ...] = ()
+    related: tuple[tuple[str, str], ...] = ()
 
     @property
     def id(self) -> str:
@@ -38,6 +40,11 @@ class CaseView:
     def title(self) -> str:
         """The case's title, or its id."""
         return self.checked.case.front.title or self.id
+
+    @property
+    def up(self) -> str:
+        """The way from the case's page to the root of the tree."""
+        return "../" * (self.id.count("/") + 2)
 
     @property
     def verdict(self) -> tuple[str, str]:
@@ -57,9 +64,20 @@ class CaseView:
 
 @dataclass(frozen=True)
 class BookView:
-    """A book as its pages show it."""
+    """A book as its pages show it; cases that are private have no page."""
 
     title: str
     book: Book
     cases: tuple[CaseView, ...] = field(default_factory=tuple)
     templates: Path | None = None
+
+    @property
+    def published(self) -> "BookView":
+        """The same book without its private cases, each case with those it points to."""
+        shown = {case.id: case.title for case in self.cases if not case.checked.case.front.private}
+
+        def related(case: CaseView) -> tuple[tuple[str, str], ...]:
+            return tuple((name, shown[name]) for name in case.checked.case.front.see if name in shown)
+
+        cases = (replace(case, related=related(case)) for case in self.cases if case.id in shown)
+        return replace(self, cases=tuple(cases))

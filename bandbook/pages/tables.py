@@ -7,6 +7,7 @@ from typing import Any
 
 from bandbook.pages.case_page import front_matter, heading
 from bandbook.pages.page import BookView
+from bandbook.pages.sections.head import described_systems
 from bandbook.pages.templates import render
 
 
@@ -21,6 +22,7 @@ def catalogue_rows(view: BookView) -> list[dict[str, Any]]:
             "status": case.status if case.status in {"failed", "stale"} else "done",
             "sign": case.verdict[0],
             "verdict": case.verdict[1],
+            "system": "; ".join(described_systems(case)),
             "aim": case.checked.case.front.aim,
             "quantities": [
                 {key: quantity[key] for key in ("name", "kind", "value", "unit", "in_beta")}

@@ -7,6 +7,7 @@ from typing import Any
 
 import bandbook
 from bandbook.exhibits import KINDS, typeset
+from bandbook.pages.numbers import as_written, unit
 
 
 def package_templates() -> Path:
@@ -28,7 +29,7 @@ def _environment(override: Path | None) -> Any:
         trim_blocks=True,
         lstrip_blocks=True,
     )
-    environment.filters["typeset"] = _typeset
+    environment.filters |= {"typeset": _typeset, "unit": unit, "written": as_written}
     return environment
 
 

@@ -19,9 +19,12 @@ APART = ("cases", "parameters", "data", "structures", "comparisons", "editions")
 def write_tree(view: BookView, folder: Path) -> Path:
     """Write the page tree of a book; what has not changed is left alone, what has no page any more goes.
 
+    Private cases have no page, and nothing of theirs is copied or named.
+
     Returns:
         The folder.
     """
+    view = view.published
     files: dict[str, bytes] = {}
     ids = [case.id for case in view.cases]
     files |= _content(view.book.content, ids)
@@ -39,7 +42,7 @@ def _content(content: Path, ids: list[str]) -> dict[str, bytes]:
     files: dict[str, bytes] = {"index.md": f"{front_matter('Front')}\n\n# Logbook\n".encode()}
     for path in sorted(content.rglob("*")):
         name = path.relative_to(content).as_posix()
-        if not path.is_file() or any(part.startswith(".") for part in Path(name).parts):
+        if not _is_ours(path, content) or any(part.startswith(".") for part in Path(name).parts):
             continue
         if name.endswith(".md") and name.split("/")[0] not in APART:
             text = path.read_text(encoding="utf-8-sig", errors="replace")
@@ -47,6 +50,11 @@ def _content(content: Path, ids: list[str]) -> dict[str, bytes]:
         elif not name.endswith((".md", ".toml", ".bib")) and name.split("/")[0] not in APART[1:]:
             files[name] = path.read_bytes()
     return files
+
+
+def _is_ours(path: Path, content: Path) -> bool:
+    """Return whether a path is a file inside the content folder, also after links of the file system."""
+    return path.is_file() and path.resolve().is_relative_to(content.resolve())
 
 
 def _assets(view: BookView) -> dict[str, bytes]:

@@ -1,5 +1,6 @@
 """An adapter between MkDocs and the page tree."""
 
+import html
 import logging
 import re
 from pathlib import Path
@@ -12,14 +13,27 @@ from mkdocs.structure.files import File, Files, InclusionLevel
 
 from bandbook import workflow
 from bandbook.errors import AuthorError
+from bandbook.pages import package_templates
 from bandbook.settings import settings_from
 
 log = logging.getLogger("mkdocs.plugins.bandbook")
 _PICTURE = re.compile(r'<img data-inline(?:="")? src="([^"]+)" alt="[^"]*"\s*/?>')
-
-
-def _inclusion(path: Path, tree: Path) -> Any:
-    return InclusionLevel.NOT_IN_NAV if path.is_relative_to(tree / "cases") else InclusionLevel.UNDEFINED
+_ASSETS = "assets/bandbook"
+_LIGHT = {"media": "(prefers-color-scheme: light)", "scheme": "default"}
+_DARK = {"media": "(prefers-color-scheme: dark)", "scheme": "slate"}
+#: Key of the theme → what it holds when a book says nothing, and what we put there: no font from another host, our
+#: mark, light and dark.
+_THEME: dict[str, tuple[Any, Any]] = {
+    "font": ({"text": "Roboto", "code": "Roboto Mono"}, False),
+    "favicon": ("assets/images/favicon.png", f"{_ASSETS}/mark.svg"),
+    "palette": (
+        None,
+        [
+            {**_LIGHT, "toggle": {"icon": "material/weather-night", "name": "Dark"}},
+            {**_DARK, "toggle": {"icon": "material/weather-sunny", "name": "Light"}},
+        ],
+    ),
+}
 
 
 class BandbookOptions(Config):
@@ -41,14 +55,13 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
         """Stay for all builds of one ``serve``."""
 
     def on_config(self, config: Any) -> Any:
-        """Add the style sheet; without a command, read, run and write the pages first."""
-        self._is_given = self.tree is not None
-        if not self._is_given:
-            self._write(config)
-        config.extra_css.append("assets/bandbook/book.css")
+        """Add our style and theme parts; without a command, read, run and write the pages first."""
+        config.use_directory_urls = False  # pages open from disk, where a folder has no index
+        _dress(config)
+        self._tree = self.tree if self.tree is not None else self._written(config)
         return config
 
-    def _write(self, config: Any) -> None:
+    def _written(self, config: Any) -> Path:
         from mkdocs.exceptions import PluginError
 
         options = {name: value for name, value in dict(self.config).items() if value is not None}
@@ -58,22 +71,22 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
                 title=config.site_name,
             )  # fmt: skip
             finished = workflow.run(settings)
-            self._tree = workflow.write_pages(settings, finished)
+            tree = workflow.write_pages(settings, finished)
         except AuthorError as error:
             raise PluginError(str(error)) from error
         for message in finished.messages:
             log.warning(message)
+        return tree
 
     def on_files(self, files: Files, config: Any) -> Files:
         """Return the theme's files and those of the page tree; cases stay out of the navigation."""
-        tree = self.tree if self.tree is not None else self._tree
         kept = [file for file in files if Path(file.src_dir or "") != Path(config.docs_dir)]
         ours = [
             File(
-                path.relative_to(tree).as_posix(), str(tree), config.site_dir, use_directory_urls=False,
-                inclusion=_inclusion(path, tree),
+                path.relative_to(self._tree).as_posix(), str(self._tree), config.site_dir, use_directory_urls=False,
+                inclusion=_inclusion(path, self._tree),
             )
-            for path in sorted(tree.rglob("*"))
+            for path in sorted(self._tree.rglob("*"))
             if path.is_file()
         ]  # fmt: skip
         return Files([*kept, *ours])
@@ -81,10 +94,31 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
     def on_post_page(self, output: str, page: Any, config: Any) -> str:
         """Put each marked figure in the page itself, so that it follows light and dark."""
         del config
-        folder = Path(page.file.abs_src_path).parent
+        folder, tree = Path(page.file.abs_src_path).parent, self._tree.resolve()
 
         def inline(match: re.Match[str]) -> str:
-            picture = folder / match[1]
-            return picture.read_text(encoding="utf-8") if picture.is_file() else match[0]
+            picture = (folder / html.unescape(match[1])).resolve()
+            is_ours = picture.is_relative_to(tree) and picture.suffix == ".svg" and picture.is_file()
+            return picture.read_text(encoding="utf-8") if is_ours else match[0]
 
         return _PICTURE.sub(inline, output)
+
+
+def _inclusion(path: Path, tree: Path) -> Any:
+    """Return that a case is a page outside the navigation, which grows with the square of its entries."""
+    return InclusionLevel.NOT_IN_NAV if path.is_relative_to(tree / "cases") else InclusionLevel.UNDEFINED
+
+
+def _dress(config: Any) -> None:
+    """Add style sheet, script and theme parts, ours below the book's own; nothing is asked of another host."""
+    theme, own = config.theme, Path(config.config_file_path).parent / "site_templates"
+    config.extra_css.insert(0, f"{_ASSETS}/book.css")
+    config.extra_javascript.insert(0, f"{_ASSETS}/book.js")
+    for parts in dict.fromkeys((package_templates() / "theme", own / "theme")):
+        if parts.is_dir():
+            theme.dirs.insert(1 if theme.custom_dir else 0, str(parts))
+    for key, (bare, ours) in _THEME.items():
+        if theme.get(key) == bare:
+            theme[key] = ours
+    if own.is_dir():
+        config.watch.append(str(own))

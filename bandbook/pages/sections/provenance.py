@@ -10,14 +10,12 @@ def facts(view: CaseView) -> dict[str, Any] | None:
     record = view.record
     if record is None:
         return None
-    files = [exhibit["file"] for exhibit in record.exhibits]
     return {
-        "uses": view.checked.uses,
+        "uses": sorted({(use.set, use.name) for use in view.checked.uses}),
         "inputs": record.inputs,
         "environment": record.environment,
         "key": record.key,
-        "files": ["record.json", "notebook.ipynb", *files],
+        "files": ["record.json", "notebook.ipynb", *dict.fromkeys(exhibit["file"] for exhibit in record.exhibits)],
         "source": view.checked.case.file,
-        "warnings": record.warnings,
-        "up": "../" * (view.id.count("/") + 2),
+        "up": view.up,
     }
