@@ -150,14 +150,19 @@ class _Splitter:
 
     def _inside(self, number: int, match: re.Match[str]) -> int:
         """Pass over a fence inside a list, a quotation or an indented text."""
-        closing = re.compile(rf"^[ \t>]*{re.escape(match[2][0])}{{{len(match[2])},}}[ \t]*$")
-        ends = (at for at in range(number + 1, len(self.lines)) if closing.match(self.lines[at]))
         info = " ".join(match[3].split())
         if kind_of(info):
             found = f'the block "{info}" stands inside a list, a quotation or an indented text'
             remedy = "move it to the left margin, or put a longer fence around an example"
             self.problems.append(Problem(found, "blocks stand at the left margin", remedy).at("", self.first + number))
-        return next(ends, number) + 1
+        closing = re.compile(rf"^[ \t>]+{re.escape(match[2][0])}{{{len(match[2])},}}[ \t]*$")
+        for end in range(number + 1, len(self.lines)):
+            if closing.match(self.lines[end]):
+                return end + 1
+            again = _OPEN.match(self.lines[end])
+            if again and kind_of(" ".join(again[3].split())):
+                break  # a block of ours stands outside, so the list or quotation has ended
+        return number + 1
 
 
 def _is_inline(match: re.Match[str]) -> bool:

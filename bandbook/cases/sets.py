@@ -119,14 +119,16 @@ def _name_problems(name: str) -> list[Problem]:
 
 def _filled(read: ParameterSet, table: Mapping[str, Any]) -> tuple[ParameterSet, list[Problem]]:
     """Return the set with what its table says, and every mistake, not placed."""
-    checked, problems = check(_TOP, {key: entry for key, entry in table.items() if key != "bond"})
+    outer = {key: {} if isinstance(entry, Mapping) else entry for key, entry in table.items() if key != "bond"}
+    checked, problems = check(_TOP, outer)
     origin = {"source": checked["source"] or "", "note": checked["note"] or ""}
     is_told = any(problem.key[:1] in {("source",), ("note",)} for problem in problems)
     if not any(origin.values()) and not is_told:
         allowed = "the set names one, for every value that does not name its own"
         problems.append(Problem("neither source nor note", allowed, "add source or note above [values]"))
-    values, wrong = _values(read, checked["values"] or {}, origin)
-    atoms, wrong_atoms = _atoms(checked["atoms"] or {})
+    inner = {key: table[key] if checked[key] == {} else {} for key in ("values", "atoms")}
+    values, wrong = _values(read, inner["values"], origin)
+    atoms, wrong_atoms = _atoms(inner["atoms"])
     bonds, wrong_bonds = _bonds(table.get("bond", []))
     read = replace(read, title=checked["title"] or read.name, source=origin["source"], note=origin["note"])
     return replace(read, values=values, atoms=atoms, bonds=tuple(bonds)), [

@@ -121,4 +121,4 @@ def _citation(people: list[str], fields: Mapping[str, str]) -> str:
     pages = fields.get("pages", "")
     parts = [who, fields.get("title", ""), ", ".join(part for part in (volume, pages) if part)]
     year = f" ({fields['year']})" if "year" in fields else ""
-    return ". ".join(part for part in parts if part) + year
+    return " ".join(part if part.endswith(".") else f"{part}." for part in parts if part).removesuffix(".") + year

@@ -16,6 +16,7 @@ MOST_WHOLE: Final = 2**53
 MOST_NESTED: Final = 20
 
 Checked = tuple[Any, list[Problem]]
+Reader = Callable[[Field, Any], Checked]
 
 
 def check(fields: Sequence[Field], given: Mapping[str, Any]) -> tuple[dict[str, Any], list[Problem]]:
@@ -152,21 +153,22 @@ def _choice(field: Field, value: object) -> Checked:
     return _wrong(field, value, near(value, field.choices) if isinstance(value, str) else "")
 
 
-def _list_of(read: Callable[[Field, Any], Checked], *, is_distinct: bool = False) -> Callable[[Field, Any], Checked]:
+def _list_of(kind: str, read: Reader, *, is_distinct: bool = False) -> Reader:
+    """Return what reads a list whose entries are of another kind."""
+
     def reader(field: Field, value: object) -> Checked:
         low, high = field.length
         if not isinstance(value, list) or not low <= len(value) <= high:
             return _wrong(field, value, _length_remedy(field, value))
-        entries, problems = _entries(read, field, value)
+        entries, problems = _entries(kind, read, field, value)
         return entries, [*problems, *_repeats(entries)] if is_distinct else problems
 
     return reader
 
 
-def _entries(
-    read: Callable[[Field, Any], Checked], field: Field, value: Sequence[Any]
-) -> tuple[list[Any], list[Problem]]:
-    pairs = [read(field, entry) for entry in value]
+def _entries(kind: str, read: Reader, field: Field, value: Sequence[Any]) -> tuple[list[Any], list[Problem]]:
+    one = replace(field, kind=kind)
+    pairs = [read(one, entry) for entry in value]
     problems = [problem.below(row) for row, (_, found) in enumerate(pairs) for problem in found]
     return [entry for entry, _ in pairs], problems
 
@@ -184,13 +186,13 @@ def _length_remedy(field: Field, value: object) -> str:
     if not isinstance(value, list):
         return "write a list in brackets"
     wanted = f"{low}" if low == high else f"{low} or more" if high == MOST_CELLS else f"{low} to {high}"
-    return f"it has {len(value)} entries; give {wanted}"
+    return f"give {wanted} entries, not {len(value)}"
 
 
 def _vector(field: Field, value: object) -> Checked:
     if not isinstance(value, list) or len(value) != 3:
         return _wrong(field, value, "write three numbers in brackets")
-    return _entries(_number, field, value)
+    return _entries("number", _number, field, value)
 
 
 def _row(field: Field, value: object) -> Checked:
@@ -208,7 +210,7 @@ def _cells(field: Field, value: object) -> Checked:
 def _whole_numbers(field: Field, value: list[Any]) -> Checked:
     if not 1 <= len(value) <= 3:
         return _wrong(field, value, "give one number for each lattice vector")
-    entries, problems = _entries(_integer, field, value)
+    entries, problems = _entries("integer", _integer, field, value)
     return (entries, problems) if problems or len(value) > 1 else (entries[0], [])
 
 
@@ -226,7 +228,7 @@ def _lengths(field: Field, value: object) -> Checked:
         value = list(range(int(match[1]), int(match[2]) + 1))
     if not isinstance(value, list) or not value:
         return _wrong(field, value, 'write "1..40" or a list such as [2, 4, 8]')
-    entries, problems = _entries(_integer, replace(field, kind="integer"), value)
+    entries, problems = _entries("integer", _integer, field, value)
     return (None, problems) if problems else (sorted(set(entries)), [])
 
 
@@ -254,22 +256,22 @@ def _plain(field: Field, value: Any, depth: int) -> Checked:
 
 
 #: Every kind of field: the reader takes the field and the value and returns the checked value and problems.
-KINDS: Final[Mapping[str, Callable[[Field, Any], Checked]]] = {
+KINDS: Final[Mapping[str, Reader]] = {
     "number": _number,
     "integer": _integer,
     "text": _text,
     "name": _name,
     "flag": _flag,
     "choice": _choice,
-    "choices": _list_of(_choice, is_distinct=True),
-    "names": _list_of(_name, is_distinct=True),
-    "texts": _list_of(_text),
-    "integers": _list_of(_integer),
-    "numbers": _list_of(_number),
+    "choices": _list_of("choice", _choice, is_distinct=True),
+    "names": _list_of("name", _name, is_distinct=True),
+    "texts": _list_of("text", _text),
+    "integers": _list_of("integer", _integer),
+    "numbers": _list_of("number", _number),
     "vector": _vector,
-    "vectors": _list_of(_vector),
+    "vectors": _list_of("vector", _vector),
     "row": _row,
-    "rows": _list_of(_row),
+    "rows": _list_of("row", _row),
     "cells": _cells,
     "lengths": _lengths,
     "table": _table,
