@@ -51,7 +51,7 @@ KINDS: Final[Mapping[str, Kind]] = {
 
 @dataclass(frozen=True)
 class QuantityName:
-    """A quantity that a question promises; ``<n>`` stands for a whole number, other ``<…>`` for a name.
+    """A quantity that a question promises; ``<n>``, ``<N>`` stand for a whole number from 1, other ``<…>`` for a name.
 
     Attributes:
         pattern: Such as ``"gap"`` or ``"energy_<n>"``.
@@ -71,7 +71,8 @@ class QuantityName:
         """
         parts = re.split(r"(<\w+>)", self.pattern)
         text = "".join(
-            (r"\d+" if part in {"<n>", "<N>"} else r".+") if part.startswith("<") else re.escape(part) for part in parts
+            (r"[1-9][0-9]*" if part in {"<n>", "<N>"} else r".+") if part.startswith("<") else re.escape(part)
+            for part in parts
         )
         return re.fullmatch(text, name) is not None
 
@@ -87,7 +88,7 @@ class Quantity:
         unit: Its unit; empty for a plain number.
         meaning: One line.
         in_beta: The same in units of β; ``None`` where it has no such form or no β is known.
-        uncertainty: Standard uncertainty in ``unit``, or ``None``.
+        uncertainty: Standard uncertainty in ``unit``, with the same decimals, or ``None``.
     """
 
     name: str
@@ -100,8 +101,9 @@ class Quantity:
 
     def __post_init__(self) -> None:
         decimals = KINDS[self.kind].decimals
-        object.__setattr__(self, "value", None if self.value is None else fixed(self.value, decimals))
-        object.__setattr__(self, "in_beta", None if self.in_beta is None else fixed(self.in_beta, decimals))
+        for name in ("value", "in_beta", "uncertainty"):
+            number = getattr(self, name)
+            object.__setattr__(self, name, None if number is None else fixed(number, decimals))
 
     def named(self, name: str) -> "Quantity":
         """Return the same quantity under another name."""
@@ -123,10 +125,13 @@ class Quantity:
 def fixed(value: float, decimals: int) -> float | None:
     """Return a number rounded to fixed decimals: −0.0 is 0.0, what is not finite is ``None``.
 
-    >>> fixed(-1e-12, 9)
-    0.0
+    >>> fixed(-1e-12, 9), fixed(float("nan"), 9), fixed(10**400, 9)
+    (0.0, None, None)
     """
-    number = float(value)
+    try:
+        number = float(value)
+    except OverflowError:
+        return None
     return round(number, decimals) + 0.0 if math.isfinite(number) else None
 
 
@@ -159,12 +164,10 @@ def typeset(value: float | None, decimals: int, uncertainty: float | None = None
     >>> typeset(-2.1499999, 3), typeset(None, 3), typeset(1.6183, 4, 0.081)
     ('−2.150', '—', '1.62(8)')
     """
-    if value is None:
+    if value is None or not math.isfinite(value):
         return "—"
-    if uncertainty:
-        places = max(0, -math.floor(math.log10(uncertainty)))
-        digits = round(uncertainty * 10**places)
-        if digits >= 10:
-            places, digits = max(0, places - 1), round(uncertainty * 10 ** max(0, places - 1))
-        return f"{round(value, places) + 0.0:.{places}f}({digits})".replace("-", "−")
-    return f"{round(value, decimals) + 0.0:.{decimals}f}".replace("-", "−")
+    digits = ""
+    if uncertainty is not None and math.isfinite(uncertainty) and uncertainty > 0:
+        decimals = max(0, -int(f"{uncertainty:.0e}".partition("e")[2]))
+        digits = "(" + f"{uncertainty:.{decimals}f}".replace(".", "").lstrip("0") + ")"
+    return f"{round(value, decimals) + 0.0:.{decimals}f}{digits}".replace("-", "−")

@@ -51,9 +51,8 @@ class Table:
     most_shown: int = 40
 
     def __post_init__(self) -> None:
-        decimals = [column.decimals for column in self.columns]
         rows = tuple(
-            tuple(_stored(cell, places) for cell, places in zip(row, decimals, strict=True)) for row in self.rows
+            tuple(_stored(cell, column) for cell, column in zip(row, self.columns, strict=True)) for row in self.rows
         )
         object.__setattr__(self, "rows", rows)
 
@@ -88,12 +87,17 @@ class Table:
         return {"name": self.name, "caption": self.caption, "csv": self.to_csv(), "html": self.to_html()}
 
 
-def _stored(cell: Cell, decimals: int | None) -> Cell:
-    if cell is None or isinstance(cell, str | bool):
-        return cell
-    if decimals is None:
-        return cell
-    return fixed(float(cell), decimals)
+def _stored(cell: Any, column: Column) -> Cell:
+    """Return a plain value with the column's decimals; numbers of numpy become Python's."""
+    plain: Cell = cell.item() if hasattr(cell, "item") else cell
+    if plain is None or isinstance(plain, str | bool):
+        return plain
+    if column.decimals is not None:
+        return fixed(plain, column.decimals)
+    whole = fixed(plain, 0)
+    if whole is not None and whole != plain:
+        raise ValueError(f"{plain} in the column {column.name!r}, which has no decimals; give it decimals")
+    return None if whole is None else int(plain)
 
 
 def _plain(cell: Cell, column: Column) -> str:

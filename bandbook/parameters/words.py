@@ -7,7 +7,7 @@ import unicodedata
 from collections.abc import Collection, Mapping
 from typing import Final
 
-from bandbook.errors import Problem
+from bandbook.errors import Problem, printable
 
 #: Study, system and site names.
 NAME: Final = re.compile(r"[A-Za-z][A-Za-z0-9_]*\Z")
@@ -49,8 +49,7 @@ def shortened(text: str) -> str:
     >>> shortened("two\nlines"), len(shortened("x" * 1000))
     ('two\\nlines', 40)
     """
-    short = text if len(text) <= 40 else text[:39] + "…"
-    return "".join(sign if sign.isprintable() else sign.encode("unicode_escape").decode() for sign in short)
+    return printable(text if len(text) <= 40 else text[:39] + "…")
 
 
 def shown(value: object) -> str:
