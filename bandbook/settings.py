@@ -103,7 +103,7 @@ def settings_from(
     config_file = config_file.resolve()
     root = config_file.parent
     checked, problems = check(OPTIONS, options)
-    content, site = (root / docs_dir).resolve(), (root / site_dir).resolve()
+    content, site = _folder(root, docs_dir), _folder(root, site_dir)
     if not content.is_dir():
         found = f'the content folder "{docs_dir}" does not exist'
         allowed = "docs_dir names the folder of cases/, content by default"
@@ -116,6 +116,14 @@ def settings_from(
             [problem.at(config_file.name, line_of(config_file, str(problem.key[0]))) for problem in problems]
         )
     return Settings(root, config_file, title, content, site, checked["timeout"])
+
+
+def _folder(root: Path, name: str) -> Path:
+    """Return a folder that mkdocs.yml names, links followed; of links that go round in a circle, the first."""
+    try:
+        return (root / name).resolve()
+    except (OSError, RuntimeError, ValueError):
+        return root / name
 
 
 def line_of(config_file: Path, key: str) -> int:

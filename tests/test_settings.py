@@ -135,5 +135,13 @@ def test_what_is_wrong_is_told_at_its_line(book: Path, text: str | bytes, line: 
     assert message.count("; ") >= 2
 
 
+def test_a_content_folder_that_links_to_itself(book: Path) -> None:
+    (book / "round").symlink_to("round")
+    write(book, GOOD.replace("content", "round"))
+    assert [message.partition(";")[0] for message in told(book)] == [
+        'mkdocs.yml:2: docs_dir: the content folder "round" does not exist'
+    ]
+
+
 def test_every_option_has_a_default() -> None:
     assert [option.name for option in OPTIONS if option.is_required] == []

@@ -13,6 +13,8 @@ Lines = dict[Key, int]
 
 #: After so many mistakes of syntax a block is read no further.
 MOST_TOLD: Final = 10
+#: A longer line is not searched for habits.
+MOST_QUOTED: Final = 300
 _ALLOWED = "a line is key = value, text in quotes, each key once"
 _VALUE = r"(?P<key>[\w\s.\"'-]+?)\s*=\s*"
 #: What authors write by habit → what is told: (pattern of the line, found, allowed, remedy).
@@ -93,7 +95,7 @@ def _syntax(message: str, text: str) -> Problem:
         named = re.search(r"'([^']*)'", what)
         key = named[1] if named else text.partition("=")[0].strip()
         return Problem(f'the key "{key}" stands twice', "each key once", "remove one of the two")
-    bare = re.sub(r"\s+#.*$", "", text)
+    bare = re.sub(r"\s+#.*$", "", text) if len(text) < MOST_QUOTED else ""
     for pattern, found, allowed, remedy in _HABITS:
         if match := pattern.match(bare):
             return Problem(f'{found} in "{_short(text)}"', allowed, remedy.format_map(_parts(match)))

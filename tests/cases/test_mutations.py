@@ -141,7 +141,7 @@ EDIT = st.tuples(
     st.integers(0, 10_000),
     PIECES,
 )
-EDITS = st.lists(EDIT, min_size=1, max_size=8)
+EDITS = st.lists(EDIT, min_size=1, max_size=5)
 HUNDREDS = settings(max_examples=200, deadline=None, suppress_health_check=list(HealthCheck), derandomize=True)
 THOUSAND = settings(HUNDREDS, max_examples=1000)
 FIFTY = settings(HUNDREDS, max_examples=50)
