@@ -62,6 +62,7 @@ ARMCHAIR_RIBBON = Lattice(
     "A1, B1, A2, B2, … line by line across the ribbon",
     (BETA, LINES, BOND_LENGTH, ALPHA),
     armchair_ribbon,
-    note="Cut at whole cells, a ribbon of an odd number of lines has no one-coordinated site; an even one has one at"
-    " each end, on its last line: remove both with `changes` where that matters.",
+    note="Cut at whole cells, a ribbon of an odd number of lines has no one-coordinated site; an even one has BN of the"
+    ' first and AN of the last cell. With N = 4 lines and 6 cells, drop = ["B4"] and'
+    ' changes = [{ cell = 5, site = "A4", remove = true }] leave none.',
 )

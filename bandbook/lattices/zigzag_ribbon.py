@@ -61,5 +61,7 @@ ZIGZAG_RIBBON = Lattice(
     "A1, B1, A2, B2, … line by line across the ribbon",
     (BETA, LINES, BOND_LENGTH, ALPHA),
     zigzag_ribbon,
-    note="Cut at whole cells, a piece has one-coordinated corner sites: leave them out with `drop` and `changes`.",
+    note="Cut at whole cells, a ribbon of N lines has two one-coordinated corner sites. N even: A1 and BN of the first"
+    ' cell; with N = 4, drop = ["A1", "B4"] leaves none. N odd: A1 of the first cell and BN of the last; with N = 3 and'
+    ' 6 cells, drop = ["A1"] and changes = [{ cell = 5, site = "B3", remove = true }] leave none.',
 )
