@@ -4,6 +4,7 @@ Colours are drawn as sentinels and saved as custom properties with a light fallb
 takes the page's colours and one opened alone is readable.
 """
 
+import hashlib
 import html
 import io
 import re
@@ -63,6 +64,8 @@ WIDTH: Final = 6.4
 _TAG: Final = re.compile(r"<[^>]*>")
 _NUMBER: Final = re.compile(r"-?\d+\.\d{3,}")
 _ID: Final = re.compile(r'(\bid="|href="#|url\(#)([^")]+)')
+#: Stands for what makes an id a figure's own, until its content is known.
+_OWN: Final = "«own»"
 _UPRIGHT: Final = re.compile(r' transform="rotate\(-?0 [^"]*"')
 _FONT: Final = re.compile(r"'DejaVu Sans'(?:, [^;\"]*)?")
 
@@ -110,13 +113,15 @@ def finished(svg: str, prefix: str, alt: str) -> str:
 
     Args:
         svg: As matplotlib saves it.
-        prefix: Put before every id.
+        prefix: Put before every id, with a digest of the content.
         alt: What the figure shows.
     """
     svg = re.sub(r"<metadata>.*?</metadata>\s*", "", svg[svg.index("<svg") :], flags=re.DOTALL)
     numbers: dict[str, int] = {}  # names that matplotlib makes from unrounded coordinates would show their last bits
-    svg = _ID.sub(lambda use: f"{use[1]}{prefix}-{numbers.setdefault(use[2], len(numbers) + 1)}", svg)
+    svg = _ID.sub(lambda use: f"{use[1]}{_OWN}{numbers.setdefault(use[2], len(numbers) + 1)}", svg)
     svg = _TAG.sub(lambda tag: _in_house(tag[0]), svg)
+    digest = hashlib.sha256(svg.encode()).hexdigest()[:8]  # pictures of several cases may stand on one page
+    svg = svg.replace(_OWN, f"{prefix}-{digest}-")
     box = re.search(r'viewBox="[^"]+"', svg)
     head = f'<svg xmlns="http://www.w3.org/2000/svg" xmlns:xlink="http://www.w3.org/1999/xlink" {box[0] if box else ""}'
     label = f' role="img" aria-label="{html.escape(alt)}" data-figure="{html.escape(prefix)}">'

@@ -83,9 +83,9 @@ def test_text_is_text_in_the_font_of_the_page() -> None:
 
 
 def test_several_figures_stand_on_one_page() -> None:
-    """Every id is unique, and every reference is to an id of the same figure."""
+    """Every id is unique, those of another case's figure of the same name too; every reference stays in its figure."""
     seen: set[str] = set()
-    for one in (figure(), figure(study="other"), figure("series", columns=2)):
+    for one in (figure(), figure(study="other"), figure("series", columns=2), figure(height=3.0)):
         ids = re.findall(r'\bid="([^"]+)"', one.svg)
         used = re.findall(r'href="#([^"]+)"', one.svg) + re.findall(r"url\(#([^)]+)\)", one.svg)
         assert len(set(ids)) == len(ids)
