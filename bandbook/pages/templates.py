@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import Any
 
 import bandbook
+from bandbook.errors import AuthorError, Problem
 from bandbook.exhibits import KINDS, typeset
 from bandbook.pages.numbers import as_written, unit
 
@@ -39,6 +40,18 @@ def _typeset(row: Mapping[str, Any], key: str = "value") -> str:
 
 
 def render(name: str, facts: Mapping[str, Any], *, override: Path | None = None) -> str:
-    """Return a template filled with facts, without blank lines, so that Markdown leaves it alone."""
-    text = _environment(override).get_template(name).render(**facts)
-    return str(text).strip()
+    """Return a template filled with facts.
+
+    Raises:
+        AuthorError: The book's own template of this name is wrong.
+    """
+    from jinja2 import TemplateError
+
+    try:
+        return str(_environment(override).get_template(name).render(**facts)).strip()
+    except TemplateError as error:
+        line = getattr(error, "lineno", None) or 1
+        found = f"the template cannot be filled: {error.message or type(error).__name__}"
+        allowed = "a template of the book takes the same facts as the package's own"
+        problem = Problem(found, allowed, "compare it with that, or remove it")
+        raise AuthorError([problem.at(f"site_templates/{name}", line)]) from error

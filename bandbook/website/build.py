@@ -5,7 +5,7 @@ from pathlib import Path
 from typing import Any
 
 from bandbook.errors import AuthorError, Problem
-from bandbook.settings import Settings
+from bandbook.settings import Settings, line_of
 
 
 def build_site(settings: Settings, tree: Path, *, site_dir: Path | None = None) -> Path:
@@ -20,7 +20,7 @@ def build_site(settings: Settings, tree: Path, *, site_dir: Path | None = None) 
         The folder of the site.
 
     Raises:
-        AuthorError: mkdocs.yml is wrong, or MkDocs refuses the pages.
+        AuthorError: mkdocs.yml is wrong or does not name the plugin, or MkDocs refuses the pages.
     """
     from mkdocs.commands.build import build
     from mkdocs.config import load_config
@@ -28,15 +28,28 @@ def build_site(settings: Settings, tree: Path, *, site_dir: Path | None = None) 
 
     logging.getLogger("mkdocs").setLevel(logging.WARNING)
     overrides: dict[str, Any] = {"site_dir": str(site_dir)} if site_dir else {}
+    plugin: Any = None
     try:
         config = load_config(str(settings.config_file), **overrides)
-        plugin: Any = config.plugins["bandbook"]
+        plugin = config.plugins.get("bandbook")
+        if plugin is None:
+            raise AuthorError([_missing_plugin(settings)])
         plugin.tree = tree
         config.plugins.on_startup(command="build", dirty=False)
         build(config)
         config.plugins.on_shutdown()
-    except (MkDocsException, Abort, KeyError) as error:
+    except (MkDocsException, Abort) as error:
         found = f"the pages could not be built: {error}"
         problem = Problem(found, "MkDocs reads mkdocs.yml", "correct it").at(settings.config_file.name, 1)
         raise AuthorError([problem]) from error
+    finally:
+        if plugin is not None:
+            plugin.tree = None  # MkDocs keeps the plugin for the next build of the same process
     return Path(config.site_dir)
+
+
+def _missing_plugin(settings: Settings) -> Problem:
+    problem = Problem(
+        "the plugin bandbook is missing", "it puts the pages in the place of the content", 'add "- bandbook"'
+    )
+    return problem.below("plugins").at(settings.config_file.name, line_of(settings.config_file, "plugins"))
