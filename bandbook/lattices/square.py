@@ -14,7 +14,7 @@ def square(*, beta: float, alpha: float = 0.0, period: float | None = None) -> M
         alpha: Coulomb integral, eV.
         period: Distance of neighbours, Å, or ``None``.
 
-    Source: textbook.
+    Source: any textbook of solid-state physics.
 
     >>> square(beta=-1.0).dimension
     2

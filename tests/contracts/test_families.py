@@ -1,78 +1,20 @@
-"""What every member of a family must hold: lattices, forms, questions."""
+"""What every question must hold when it is asked through the registry."""
 
-import inspect
 import json
 import re
 from typing import Any
 
-import numpy as np
 import pytest
 
 from bandbook import registry
 from bandbook.analyses import ANALYSES, Analysis
 from bandbook.exhibits import KINDS, answer_bundle
-from bandbook.lattices import LATTICES, Lattice
-from bandbook.parameters import KINDS as FIELD_KINDS
-from bandbook.solver.hamiltonian import bloch
-from bandbook.systems import FORMS
 
-VALUES = {
-    "beta": -2.5, "beta_inside": -2.85, "beta_between": -2.15, "alpha": 0.3, "alpha_a": 0.5, "alpha_b": -0.5, "period": 2.4,
-    "bond_length": 1.42, "lines": 5, "sites": 7,
-}  # fmt: skip
 STUDIES: dict[str, dict[str, Any]] = {
     "levels": {"question": "levels", "cells": 4},
     "bands": {"question": "bands"},
     "length_series": {"question": "length_series", "cells": "1..8"},
 }
-
-
-def built(lattice: Lattice, **more: float) -> Any:
-    return lattice.build(**{**{field.name: VALUES[field.name] for field in lattice.fields}, **more})
-
-
-@pytest.mark.parametrize("lattice", LATTICES, ids=lambda lattice: lattice.name)
-def test_a_lattice_keeps_its_word(lattice: Lattice) -> None:
-    signature = inspect.signature(lattice.build)
-    assert set(signature.parameters) == {field.name for field in lattice.fields}
-    for field in lattice.fields:
-        assert field.kind in FIELD_KINDS
-        assert field.meaning
-        assert not field.meaning.endswith(".")
-        default = signature.parameters[field.name].default
-        assert field.is_required == (default is inspect.Parameter.empty)
-        if not field.is_required:
-            assert field.default == default
-    model = built(lattice)
-    assert model.dimension == lattice.dimension
-    if model.dimension:
-        h, _ = bloch(model, np.random.default_rng(1).uniform(-1, 1, (5, model.dimension)))
-        assert np.allclose(h, h.conj().swapaxes(1, 2), atol=1e-12)
-
-
-@pytest.mark.parametrize("lattice", LATTICES, ids=lambda lattice: lattice.name)
-def test_alpha_shifts_every_level(lattice: Lattice) -> None:
-    own = {"alpha_a": None, "alpha_b": None} if "alpha_a" in {field.name for field in lattice.fields} else {}
-    k = np.full((1, lattice.dimension), 0.37)
-    low = np.linalg.eigvalsh(bloch(built(lattice, alpha=0.0, **own), k)[0])  # type: ignore[arg-type]
-    high = np.linalg.eigvalsh(bloch(built(lattice, alpha=1.25, **own), k)[0])  # type: ignore[arg-type]
-    assert high == pytest.approx(low + 1.25, abs=1e-10)
-
-
-@pytest.mark.parametrize("lattice", LATTICES, ids=lambda lattice: lattice.name)
-def test_bonds_have_one_length(lattice: Lattice) -> None:
-    """Positions are sensible: all bonds of a lattice of equal bonds are equally long."""
-    model = built(lattice)
-    at = np.array([site.at for site in model.sites])
-    vectors = np.array(model.vectors or np.zeros((0, 3)))
-    steps = [at[c.end] + (np.array(c.cell) @ vectors if c.cell else 0) - at[c.start] for c in model.couplings]
-    lengths = np.linalg.norm(steps, axis=1)
-    assert lengths == pytest.approx(np.full(len(lengths), lengths[0]), abs=1e-9)
-
-
-def test_forms_have_keys_of_their_own() -> None:
-    keys = [form.key for form in FORMS]
-    assert len(set(keys)) == len(keys)
 
 
 @pytest.mark.parametrize("analysis", ANALYSES, ids=lambda analysis: analysis.question)
