@@ -106,7 +106,7 @@ def test_a_study_says_what_was_asked_and_what_it_rests_on(make_book: MakeBook, c
     rests = 'rests on <a href="../../parameters/set/index.html">set</a>'
     assert asked == f"<strong>levels</strong> · cells 4 · {rests}"
     values = page_of(tree).partition("<caption>Reference values</caption>")[2]
-    assert "<td data-number>0.618034</td><td data-number>10⁻⁶</td><td data-number>0.618034</td>" in values
+    assert "<td data-number>0.618034</td> <td data-number>10⁻⁶</td> <td data-number>0.618034</td>" in values
     assert "✓ agrees" in values
 
 
@@ -188,7 +188,7 @@ def test_the_catalogue_as_csv_and_json(make_book: MakeBook, case_text: str) -> N
 def test_a_set_tells_who_uses_each_value(make_book: MakeBook) -> None:
     _, tree = write(make_book())
     used, unused = re.findall(r'<tr id="\w+">.*?</tr>', page_of(tree, "parameters/set"))
-    assert "<td data-number>−2.5</td><td data-number>0.1</td><td>eV</td>" in used
+    assert "<td data-number>−2.5</td> <td data-number>0.1</td> <td>eV</td>" in used
     assert '<a href="../../cases/a/index.html">a</a>' in used
     assert "no case" in unused
 
