@@ -80,7 +80,8 @@ def check_system(given: Mapping[str, Any]) -> tuple[dict[str, Any] | None, list[
     form = forms[0]
     fields = form.fields(given)
     if form.key == "lattice" and given["lattice"] not in LATTICE_NAMES:
-        given = {field.name: given[field.name] for field in fields if field.name in given}
+        known = {field.name for field in fields}
+        given = {key: value for key, value in given.items() if key in known}
     checked, problems = check(fields, given)
     problems += form.inspect(checked)
     if problems:

@@ -185,8 +185,8 @@ def _length_remedy(field: Field, value: object) -> str:
     low, high = field.length
     if not isinstance(value, list):
         return "write a list in brackets"
-    wanted = f"{low}" if low == high else f"{low} or more" if high == MOST_CELLS else f"{low} to {high}"
-    return f"give {wanted} entries, not {len(value)}"
+    upwards = f"{low} or more" if high == MOST_CELLS else f"{low} to {bound(high)}"
+    return f"give {low if low == high else upwards} entries, not {len(value)}"
 
 
 def _vector(field: Field, value: object) -> Checked:
