@@ -12,6 +12,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+import bandbook
 from bandbook import __version__
 from bandbook.store import canonical_json, code_digest, digest, environment, inputs_of, key_of, keys
 
@@ -149,7 +150,7 @@ def test_the_code_digest_reads_every_source_of_its_parts() -> None:
 
 
 def test_an_edit_changes_the_code_digest_line_ends_do_not(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(keys.bandbook, "__file__", str(tmp_path / "__init__.py"))
+    monkeypatch.setattr(bandbook, "__file__", str(tmp_path / "__init__.py"))
     (tmp_path / "solver").mkdir()
     source = tmp_path / "solver" / "levels.py"
     (tmp_path / "cells.py").write_bytes(b"x = 1\n")

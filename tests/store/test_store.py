@@ -16,7 +16,7 @@ import pytest
 
 from bandbook.errors import AuthorError, IntegrityError, PhysicsError, Problem, RunError, WorkingsError
 from bandbook.notebooks import Harvest
-from bandbook.store import Failure, Store, files, key_of, result, store
+from bandbook.store import Failure, Store, digest, files, key_of, result, store
 
 ROOT = Path(__file__).resolve().parents[2]
 PARAMETERS: dict[str, Any] = {
@@ -139,7 +139,7 @@ def test_a_result_that_names_files_elsewhere_is_damage(tmp_path: Path) -> None:
     content = json.loads((folder / "result.json").read_bytes())
     del content["digest"]
     (folder.parent / "x").write_bytes(b"1")
-    content["files"]["../x"] = files_digest = result.digest(b"1")
+    content["files"]["../x"] = files_digest = digest(b"1")
     assert files_digest.startswith("sha256:")
     (folder / "result.json").write_bytes(result.result_bytes(content))
     assert shelf.get(KEY) is None
