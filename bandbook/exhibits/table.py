@@ -90,7 +90,9 @@ class Table:
 def _stored(cell: Any, column: Column) -> Cell:
     """Return a plain value with the column's decimals; numbers of numpy become Python's."""
     plain: Cell = cell.item() if hasattr(cell, "item") else cell
-    if plain is None or isinstance(plain, str | bool):
+    if isinstance(plain, str):
+        return plain.replace("\r\n", "\n").replace("\r", "\n")
+    if plain is None or isinstance(plain, bool):
         return plain
     if column.decimals is not None:
         return fixed(plain, column.decimals)
