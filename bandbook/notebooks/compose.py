@@ -4,9 +4,11 @@ import pprint
 from collections.abc import Mapping
 from typing import Any
 
+#: The notebook's first words. The same for every case: its title and prose stand elsewhere, and may change.
 ABOUT = (
-    "This notebook was written from a checked case file. Its first code cell carries every parameter; it opens no\n"
-    "other file and reruns wherever `bandbook` is installed. Running it runs its author's own Python, if it has any."
+    "This notebook was written from a checked case file of a calculation logbook. Its first code cell carries every\n"
+    "parameter, each cell after it is one step of the case. It opens no other file and needs only `bandbook` to be\n"
+    "run again. Running it runs its author's own Python, where the case has some."
 )
 
 

@@ -1,15 +1,22 @@
 """From an executed notebook to quantities, exhibits, warnings and files."""
 
-import copy
+import html
 import json
-from collections.abc import Iterator, Mapping
+import math
+import re
+from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, Final
 
+from bandbook.errors import AuthorError, Problem, RunError
 from bandbook.exhibits import MIME
+from bandbook.notebooks.outputs import notebook_bytes, text_of, tidied
 
-#: Longest stream output that is kept of one cell, in characters.
-MOST_STREAM = 20_000
+SVG: Final = "image/svg+xml"
+#: Most words of a drawing that its alternative text repeats.
+_MOST_WORDS: Final = 8
+_NAME = re.compile(r"[A-Za-z0-9][A-Za-z0-9_.-]*")
+_WORDS = re.compile(r"<!--\s*(.*?)\s*-->|<text[^>]*>([^<]+)</text>", re.DOTALL)
 
 
 @dataclass
@@ -18,7 +25,7 @@ class Harvest:
 
     Attributes:
         quantities: As a result has them.
-        exhibits: Figures, tables and texts in the order of the notebook.
+        exhibits: Figures, tables and texts in the order of the notebook, each with the ``step`` that gave it.
         warnings: ``{"study", "text"}`` each.
         files: Relative path → bytes: notebook, figures, tables.
         run: Times and host; kept beside the result, never published.
@@ -32,114 +39,148 @@ class Harvest:
 
 
 def harvest(notebook: Any, *, run: Mapping[str, Any] | None = None) -> Harvest:
-    """Collect what an executed notebook gave."""
-    clean = cleaned(notebook)
-    found = Harvest(run=dict(run or {}))
-    counts = {"figure": 0, "text": 0}
-    for step, output in _outputs(clean):
-        data = output.get("data", {})
-        if MIME in data:
-            _take_answer(found, _as_dict(data[MIME]), step)
-        elif "image/svg+xml" in data:
-            _take_figure(found, output, counts, step)
-        elif output["output_type"] in {"stream", "execute_result", "display_data"}:
-            _take_text(found, output, counts, step)
-    found.files["notebook.ipynb"] = (json.dumps(clean, indent=1, sort_keys=True, ensure_ascii=False) + "\n").encode()
+    """Collect what an executed notebook gave; two runs of the same notebook give the same harvest.
+
+    Args:
+        notebook: Executed to its end.
+        run: Times and host, kept beside the result.
+
+    Raises:
+        AuthorError: Workings report a name twice, or display what only a study may. It carries the step.
+        RunError: A picture that a study announced is missing.
+    """
+    clean = tidied(notebook)
+    basket = _Basket(Harvest(run=dict(run or {})))
+    for cell in clean["cells"]:
+        try:
+            for output in cell.get("outputs", []):
+                basket.take(cell["id"], output)
+        except AuthorError as error:
+            name, _, number = cell["id"].partition("-")
+            error.step, error.notebook = int(number) if name == "step" else 0, notebook_bytes(clean)
+            raise
+    found = basket.found
+    lost = [exhibit["file"] for exhibit in found.exhibits if exhibit["file"] not in found.files]
+    if lost:
+        raise RunError(f"{lost[0]} did not arrive; a run is kept only when all of it is; run again")
+    found.files["notebook.ipynb"] = notebook_bytes(clean)
     return found
 
 
-def _outputs(notebook: Any) -> Iterator[tuple[str, Any]]:
-    for cell in notebook["cells"]:
-        for output in cell.get("outputs", []):
-            yield cell["id"], output
+class _Basket:
+    """What was collected so far."""
 
+    def __init__(self, found: Harvest) -> None:
+        self.found = found
+        self._answers: dict[str, Any] = {}
+        self._numbers = {"figure": 0, "text": 0}
 
-def _as_dict(data: Any) -> dict[str, Any]:
-    return dict(json.loads(data)) if isinstance(data, str) else dict(data)
+    def take(self, step: str, output: Any) -> None:
+        """Take one output of a cell."""
+        data = output.get("data", {})
+        if MIME in data:
+            self._take_answer(data[MIME], step)
+        elif SVG in data:
+            self._take_figure(output, step)
+        elif output["output_type"] == "stream":
+            self._take_text(text_of(output["text"]), step)
+        elif output["output_type"] in {"execute_result", "display_data"}:
+            self._take_text(text_of(data.get("text/plain", "")), step)
 
+    def _take_answer(self, data: Any, step: str) -> None:
+        try:
+            answer = json.loads(data) if isinstance(data, str) else data
+            study, quantities = str(answer["study"]), [_checked(row) for row in answer["quantities"]]
+            if self._answers.get(study) == answer and study != "workings":
+                return  # asked once more by workings
+            self._refuse_twice(study, quantities)
+            self._answers[study] = answer
+            self.found.quantities += quantities
+            self.found.warnings += [{"study": study, "text": str(text)} for text in answer["warnings"]]
+            for table in answer["tables"]:
+                self._take_table(study, table, step)
+            for figure in answer["figures"]:
+                path = _path(study, figure["name"], "figures", "svg")
+                self._add(study, "figure", figure, step=step, file=path)
+        except (KeyError, TypeError, ValueError) as error:
+            found = f"an output under the book's own type {MIME} that no study gave"
+            raise AuthorError([Problem(found, "workings report numbers with report(…)", "take it out")]) from error
 
-def _take_answer(found: Harvest, answer: dict[str, Any], step: str) -> None:
-    study = answer["study"]
-    found.quantities += answer["quantities"]
-    found.warnings += [{"study": study, "text": text} for text in answer["warnings"]]
-    for table in answer["tables"]:
-        path = f"tables/{_name(study, table['name'])}.csv"
-        found.files[path] = table["csv"].encode()
-        words = {"alt": "", "caption": table["caption"], "html": table["html"]}
-        found.exhibits.append(
-            {"study": study, "kind": "table", "name": table["name"], "file": path, "step": step, **words}
+    def _refuse_twice(self, study: str, quantities: list[dict[str, Any]]) -> None:
+        names = [row["name"] for row in [*self.found.quantities, *quantities]]
+        twice = [name for number, name in enumerate(names) if name in names[:number]]
+        if twice:
+            found = f'the quantity "{twice[0]}" is given twice'
+            remedy = "report it once, under one name" if study == "workings" else "ask the study once"
+            raise AuthorError([Problem(found, "every quantity of a case has a name of its own", remedy)])
+
+    def _take_table(self, study: str, table: Mapping[str, Any], step: str) -> None:
+        path = _path(study, table["name"], "tables", "csv")
+        self.found.files[path] = table["csv"].encode()
+        self._add(study, "table", {"alt": "", **table}, step=step, file=path)
+        self.found.exhibits[-1]["html"] = str(table["html"])
+
+    def _take_figure(self, output: Any, step: str) -> None:
+        """Take the picture of a figure that an answer announced, or one that workings drew."""
+        mark, svg = output.get("metadata", {}).get("bandbook"), text_of(output["data"][SVG])
+        if isinstance(mark, Mapping) and mark.get("study") in self._answers:
+            self.found.files[_path(mark["study"], mark["figure"], "figures", "svg")] = svg.encode()
+            return
+        path, number = self._next("figure", "figures", "svg")
+        self.found.files[path] = svg.encode()
+        words = {"name": f"workings-{number}", "alt": drawing_alt(svg), "caption": ""}
+        self._add("workings", "figure", words, step=step, file=path)
+
+    def _take_text(self, text: str, step: str) -> None:
+        if not text.strip():
+            return
+        path, number = self._next("text", "tables", "txt")
+        self.found.files[path] = text.encode()
+        self._add("workings", "text", {"name": f"workings-{number}", "alt": "", "caption": ""}, step=step, file=path)
+        self.found.exhibits[-1]["text"] = text
+
+    def _next(self, kind: str, folder: str, ending: str) -> tuple[str, int]:
+        self._numbers[kind] += 1
+        return f"{folder}/workings-{self._numbers[kind]}.{ending}", self._numbers[kind]
+
+    def _add(self, study: str, kind: str, words: Mapping[str, Any], *, step: str, file: str) -> None:
+        exhibit = {"study": study, "kind": kind, "name": str(words["name"]), "file": file}
+        self.found.exhibits.append(
+            {**exhibit, "alt": str(words["alt"]), "caption": str(words["caption"]), "step": step}
         )
-    for figure in answer["figures"]:
-        path = f"figures/{_name(study, figure['name'])}.svg"
-        if "svg" in figure:
-            found.files[path] = figure["svg"].encode()
-        words = {"alt": figure["alt"], "caption": figure["caption"]}
-        found.exhibits.append(
-            {"study": study, "kind": "figure", "name": figure["name"], "file": path, "step": step, **words}
-        )
 
 
-def _name(study: str, name: str) -> str:
-    return study if name == study else f"{study}-{name}"
+def _checked(row: Mapping[str, Any]) -> dict[str, Any]:
+    """Return a quantity as it came.
+
+    Raises:
+        KeyError: Something is missing.
+        ValueError: A number is not finite.
+    """
+    for name in ("value", "in_beta", "uncertainty"):
+        if row[name] is not None and not math.isfinite(row[name]):
+            raise ValueError(name)
+    return {name: row[name] for name in ("name", "kind", "value", "unit", "in_beta", "uncertainty", "meaning")}
 
 
-def _take_figure(found: Harvest, output: Any, counts: dict[str, int], step: str) -> None:
-    """Take the picture of a figure that an answer announced, or one that workings drew."""
-    mark = output.get("metadata", {}).get("bandbook")
-    svg = _text(output["data"]["image/svg+xml"]).encode()
-    if mark:
-        found.files[f"figures/{_name(mark['study'], mark['figure'])}.svg"] = svg
-        return
-    counts["figure"] += 1
-    path = f"figures/workings-{counts['figure']}.svg"
-    found.files[path] = svg
-    words = {"alt": f"Figure {counts['figure']} drawn by the case's own Python", "caption": ""}
-    name = f"workings-{counts['figure']}"
-    found.exhibits.append({"study": "workings", "kind": "figure", "name": name, "file": path, "step": step, **words})
+def _path(study: str, name: str, folder: str, ending: str) -> str:
+    """Return the path of an exhibit.
+
+    Raises:
+        ValueError: The names make no path.
+    """
+    if not _NAME.fullmatch(study) or not _NAME.fullmatch(name):
+        raise ValueError(name)
+    return f"{folder}/{study if name == study else f'{study}-{name}'}.{ending}"
 
 
-def _take_text(found: Harvest, output: Any, counts: dict[str, int], step: str) -> None:
-    text = _text(output["text"]) if output["output_type"] == "stream" else _text(output["data"].get("text/plain", ""))
-    if not text.strip():
-        return
-    counts["text"] += 1
-    path = f"tables/workings-{counts['text']}.txt"
-    found.files[path] = text.encode()
-    words = {"alt": "", "caption": "", "text": text}
-    name = f"workings-{counts['text']}"
-    found.exhibits.append({"study": "workings", "kind": "text", "name": name, "file": path, "step": step, **words})
+def drawing_alt(svg: str) -> str:
+    """Return the alternative text of a figure that an author's code drew: the words that stand in it.
 
-
-def _text(value: Any) -> str:
-    return value if isinstance(value, str) else "".join(value)
-
-
-def cleaned(notebook: Any) -> Any:
-    """Return the notebook without what differs from run to run: timings and the exact version of the language."""
-    clean = copy.deepcopy(notebook)
-    clean["metadata"]["language_info"] = {"name": "python"}
-    for cell in clean["cells"]:
-        cell.get("metadata", {}).pop("execution", None)
-        if cell["cell_type"] == "code":
-            cell["outputs"] = [_shortened(output) for output in _merged(cell["outputs"])]
-    return clean
-
-
-def _merged(outputs: list[Any]) -> list[Any]:
-    """Join neighbouring stream outputs, which arrive in pieces of no fixed size."""
-    merged: list[Any] = []
-    for output in outputs:
-        last = merged[-1] if merged else None
-        if last and output["output_type"] == last["output_type"] == "stream" and output["name"] == last["name"]:
-            last["text"] = _text(last["text"]) + _text(output["text"])
-        else:
-            merged.append(output)
-    return merged
-
-
-def _shortened(output: Any) -> Any:
-    if output["output_type"] == "stream":
-        text = _text(output["text"])
-        if len(text) > MOST_STREAM:
-            output["text"] = f"{text[:MOST_STREAM]}\n… {len(text) - MOST_STREAM} more characters were left out\n"
-    return output
+    >>> drawing_alt("<svg><!-- 0.5 --><!-- energy (eV) --><text x='1'>gap &amp; k</text></svg>")
+    'A figure drawn by the workings of this case, with the words: energy (eV), gap & k'
+    """
+    found = [html.unescape(" ".join((one or other).split())) for one, other in _WORDS.findall(svg)]
+    words = [word for word in dict.fromkeys(found) if re.search(r"[^\W\d_]", re.sub(r"\\\w+", "", word))]
+    about = "A figure drawn by the workings of this case"
+    return f"{about}, with the words: {', '.join(words[:_MOST_WORDS])}" if words else f"{about}; no words stand in it"

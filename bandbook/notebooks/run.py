@@ -1,20 +1,19 @@
-"""Execute a notebook in a kernel of its own and tell apart how it can end."""
+"""Execute a notebook in a kernel of its own."""
 
+import asyncio
 import contextlib
-import json
+import math
 import platform
-import re
 import time
 from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
 from typing import Any
 
-from bandbook.errors import AuthorError, BandbookError, PhysicsError, Problem, RunError, WorkingsError
 from bandbook.notebooks.compose import compose
+from bandbook.notebooks.endings import Ended, error_of
 from bandbook.notebooks.harvest import Harvest, harvest
-from bandbook.notebooks.kernels import fresh_kernel
-
-_ANSI = re.compile(r"\x1b\[[0-9;]*m")
-_PLACE = re.compile(r"(?:/[^\s'\"]+)+/(?=[\w.-]+\.py\b)|/tmp/[^\s:'\"]+/")
+from bandbook.notebooks.kernels import Kernel, fresh_kernel, silent_log
+from bandbook.notebooks.outputs import bounded, note_shortened, tidied
 
 
 def local_runner(*, timeout: float) -> Callable[[Mapping[str, Any], str], Harvest]:
@@ -25,106 +24,114 @@ def local_runner(*, timeout: float) -> Callable[[Mapping[str, Any], str], Harves
     """
 
     def run_one(parameters: Mapping[str, Any], key: str) -> Harvest:
-        began = time.time()
+        began, clock = time.time(), time.monotonic()
         notebook = run_notebook(compose(parameters, key), timeout=timeout)
-        run = {"began": began, "seconds": time.time() - began, "host": platform.node()}
+        run = {"began": began, "seconds": time.monotonic() - clock, "host": platform.node()}
         return harvest(notebook, run=run)
 
     return run_one
 
 
 def run_notebook(notebook: Any, *, timeout: float) -> Any:
-    """Execute a notebook in a fresh kernel and return it.
+    """Execute a notebook in a fresh kernel and return it, tidied.
+
+    Args:
+        notebook: As ``compose`` gives it; its outputs are filled.
+        timeout: Longest time of one cell, s.
 
     Raises:
         WorkingsError: An author's code cell failed.
-        PhysicsError: A question makes no sense for its model.
+        PhysicsError: A question makes no sense for its model, or the numbers failed.
         AuthorError: A function of the workings built no model, or a study names what the model lacks.
-        RunError: The run timed out, or the kernel died. Every error carries the number of its step.
+        RunError: The run timed out, or the kernel died. Every error carries the number of its step, and the notebook
+            as far as it ran.
     """
-    try:
-        with fresh_kernel() as (manager, place):
-            return _execute(notebook, manager, timeout=timeout, place=place)
-    except BandbookError as error:
-        error.step = _failing_step(notebook)
-        raise
+    with fresh_kernel() as kernel:
+        execution = Execution(notebook, kernel, timeout)
+        try:
+            asyncio.run(execution.drive())
+        except Exception as error:
+            raise error_of(error, execution.ended()) from error
+        return execution.tidied()
 
 
-def _execute(notebook: Any, manager: Any, *, timeout: float, place: Mapping[str, Any]) -> Any:
-    from nbclient import NotebookClient
-    from nbclient.exceptions import CellExecutionError, CellTimeoutError, DeadKernelError
+@dataclass
+class Execution:
+    """One execution: what runs, and how far it came.
 
-    client = NotebookClient(
-        notebook,
-        km=manager,
-        timeout=int(timeout),
-        startup_timeout=120,
-        record_timing=False,
-        raise_on_iopub_timeout=True,
-        iopub_timeout=30,
-        shutdown_kernel="immediate",
-    )
-    try:
-        client.execute(cwd=place["cwd"], env=dict(place["env"]))
-    except CellExecutionError as error:
-        raise _failed(notebook, error) from error
-    except CellTimeoutError as error:
-        found = f"a cell ran longer than {timeout:g} s"
-        raise RunError(
-            f"{found}; the limit is the book's `timeout`; make it faster or raise it", reason="timed out"
-        ) from error
-    except DeadKernelError as error:
-        raise _died() from error
-    except RuntimeError as error:
-        raise _died(str(error)) from error
-    finally:
-        with contextlib.suppress(Exception):
-            client.kc.stop_channels()
-    return notebook
+    Attributes:
+        notebook: Filled as it runs.
+        kernel: Started and ended by ``drive``.
+        timeout: Longest time of one cell, s.
+        index: Number of the cell that runs, from 0.
+        exit_code: How the kernel ended before it was told to.
+        shortened: Streams that were cut: number of the cell, stream.
+    """
 
+    notebook: Any
+    kernel: Kernel
+    timeout: float
+    index: int = 0
+    exit_code: int | None = None
+    shortened: set[tuple[int, str]] = field(default_factory=set)
 
-def _died(detail: str = "") -> RunError:
-    found = "the kernel died before the notebook ended" + (f" ({detail})" if detail else "")
-    return RunError(f"{found}; a case must not end its own process; look at its workings and its memory")
+    async def drive(self) -> None:
+        """Start the kernel, execute cell by cell, and end it, whatever happens."""
+        from nbclient.exceptions import DeadKernelError
 
+        client = self._client()
+        try:
+            await client.async_start_new_kernel(**self.kernel.place)
+            await client.async_start_new_kernel_client()
+            for index, cell in enumerate(self.notebook.cells):
+                self.index = index
+                await client.async_execute_cell(cell, index, execution_count=client.code_cells_executed + 1)
+        except DeadKernelError as error:
+            task = asyncio.current_task()
+            if task is not None and task.cancelling():  # nbclient takes an interrupted command for a dead kernel
+                raise asyncio.CancelledError from error
+            raise
+        finally:
+            self.exit_code = self.kernel.exit_code
+            self.kernel.end()
+            with contextlib.suppress(Exception):
+                client.kc.stop_channels()
+            await self.kernel.manager.cleanup_resources()
 
-def _failed(notebook: Any, error: Any) -> BandbookError:
-    """Return the book's error for a failing cell, by the class that was raised in it and the cell's kind."""
-    cell = next((cell for cell in notebook.cells if _error_of(cell)), None)
-    output = _error_of(cell) if cell is not None else None
-    text = _ANSI.sub("", "\n".join(output["traceback"])) if output else str(error)
-    traceback = _PLACE.sub("", text)
-    source = cell.source if cell is not None else ""
-    is_study = source.startswith("answer(") or "from bandbook.cells import begin" in source
-    if is_study and error.ename == "PhysicsError":
-        return PhysicsError(error.evalue)
-    if is_study and error.ename == "AuthorError":
-        return AuthorError([Problem(*(*error.evalue.split("; ", 2), "see the manual", "correct it")[:3])])
-    number = _number(notebook, cell)
-    message = f"{error.ename}: {error.evalue}"
-    return WorkingsError(message, cell=number, source=source, traceback=traceback)
+    def _client(self) -> Any:
+        from nbclient import NotebookClient
 
+        client = NotebookClient(
+            self.notebook,
+            km=self.kernel.manager,
+            timeout=max(1, math.ceil(self.timeout)),
+            startup_timeout=120,
+            record_timing=False,
+            raise_on_iopub_timeout=True,
+            iopub_timeout=60,
+            store_widget_state=False,
+            on_cell_executed=_refuse_exit,
+            log=silent_log(),
+        )
+        client.output = bounded(client.output, self.shortened)
+        client.reset_execution_trackers()
+        return client
 
-def _error_of(cell: Any) -> Any:
-    if cell.cell_type != "code":
-        return None
-    return next((output for output in cell.outputs if output.output_type == "error"), None)
+    def tidied(self) -> Any:
+        """Return the notebook as far as it ran, tidied."""
+        note_shortened(self.notebook, self.shortened)
+        self.shortened = set()
+        return tidied(self.notebook, self.kernel.scratch)
 
-
-def _failing_step(notebook: Any) -> int:
-    """Return the number of the step that failed or was running last, from 1; 0 before the first."""
-    steps = [cell for cell in notebook.cells if cell.id.startswith("step-")]
-    failing = next((number for number, cell in enumerate(steps, start=1) if _error_of(cell)), 0)
-    started = sum(bool(cell.execution_count or cell.outputs) for cell in steps)
-    return failing or min(started + 1, len(steps))
-
-
-def _number(notebook: Any, failing: Any) -> int:
-    """Return the number of the failing step among the steps, from 1."""
-    steps = [cell for cell in notebook.cells if cell.id.startswith("step-")]
-    return next((number for number, cell in enumerate(steps, start=1) if cell is failing), 0)
+    def ended(self) -> Ended:
+        """Return how it ended."""
+        return Ended(self.tidied(), self.index, self.timeout, self.exit_code)
 
 
-def notebook_bytes(notebook: Any) -> bytes:
-    """Return a notebook as it is stored: sorted, readable, the same bytes for the same notebook."""
-    return (json.dumps(notebook, indent=1, sort_keys=True, ensure_ascii=False) + "\n").encode()
+def _refuse_exit(*, execute_reply: Any, **_: Any) -> None:
+    """Notice ``quit()``, which a kernel answers as if all were well."""
+    from nbclient.exceptions import DeadKernelError
+
+    payload = execute_reply["content"].get("payload") or ()
+    if any(entry.get("source") == "ask_exit" for entry in payload):
+        raise DeadKernelError("a cell asked its kernel to end")

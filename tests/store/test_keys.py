@@ -13,7 +13,6 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 import bandbook
-from bandbook import __version__
 from bandbook.store import canonical_json, code_digest, digest, environment, inputs_of, key_of, keys
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -169,7 +168,7 @@ def test_an_edit_changes_the_code_digest_line_ends_do_not(tmp_path: Path, monkey
 def test_the_environment_lists_what_the_key_covers() -> None:
     found = environment()
     assert list(found) == ["python", "numpy", "scipy", "matplotlib", "bandbook"]
-    assert found["bandbook"] == __version__
+    assert found["bandbook"] == bandbook.__version__
     assert found["python"] == f"{sys.version_info.major}.{sys.version_info.minor}"
 
 
