@@ -15,6 +15,7 @@ from bandbook import workflow
 from bandbook.errors import AuthorError
 from bandbook.pages import package_templates
 from bandbook.settings import settings_from
+from bandbook.website.navigation import navigation
 
 log = logging.getLogger("mkdocs.plugins.bandbook")
 _PICTURE = re.compile(r'<img data-inline(?:="")? src="([^"]+)" alt="[^"]*"\s*/?>')
@@ -89,6 +90,8 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
             for path in sorted(self._tree.rglob("*"))
             if path.is_file()
         ]  # fmt: skip
+        if config.nav is None:
+            config.nav = navigation(file.src_uri for file in ours)
         return Files([*kept, *ours])
 
     def on_post_page(self, output: str, page: Any, config: Any) -> str:

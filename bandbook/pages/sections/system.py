@@ -36,8 +36,8 @@ def unit_of(key: str) -> str:
 def words(value: Any) -> str:
     """Return a value as a page shows it.
 
-    >>> words([1, -0.5]), words({"half": 10}), words(True)
-    ('1, −0.5', 'half = 10', 'yes')
+    >>> words([1, -0.5]), words([{"cell": 1}]), words({"half": 10}), words(True)
+    ('1, −0.5', '(cell = 1)', 'half = 10', 'yes')
     """
     if isinstance(value, bool):
         return "yes" if value else "no"
@@ -46,7 +46,7 @@ def words(value: Any) -> str:
     if isinstance(value, Mapping):
         return ", ".join(f"{key} = {words(entry)}" for key, entry in value.items())
     if isinstance(value, Sequence) and not isinstance(value, str):
-        return ", ".join(f"({words(entry)})" if isinstance(entry, list) else words(entry) for entry in value)
+        return ", ".join(f"({words(entry)})" if isinstance(entry, list | Mapping) else words(entry) for entry in value)
     return str(value)
 
 
