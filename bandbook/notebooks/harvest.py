@@ -9,7 +9,7 @@ from dataclasses import dataclass, field
 from typing import Any, Final
 
 from bandbook.errors import AuthorError, Problem, RunError
-from bandbook.exhibits import MIME
+from bandbook.exhibits import KINDS, MIME
 from bandbook.notebooks.outputs import notebook_bytes, text_of, tidied
 
 SVG: Final = "image/svg+xml"
@@ -155,8 +155,10 @@ def _checked(row: Mapping[str, Any]) -> dict[str, Any]:
 
     Raises:
         KeyError: Something is missing.
-        ValueError: A number is not finite.
+        ValueError: A number is not finite, or of no known kind.
     """
+    if row["kind"] not in KINDS:
+        raise ValueError(row["kind"])
     for name in ("value", "in_beta", "uncertainty"):
         if row[name] is not None and not math.isfinite(row[name]):
             raise ValueError(name)

@@ -138,6 +138,7 @@ def test_a_number_reported_twice() -> None:
         {**answer_bundle(Answer("x")), "tables": [{"name": "/a", "csv": "", "html": "", "caption": ""}]},
         {**answer_bundle(Answer("x")), "quantities": [{**Quantity("x.a", "number", 1.0).as_dict(), "value": math.nan}]},
         {**answer_bundle(Answer("x")), "quantities": [{**Quantity("x.a", "number", 1.0).as_dict(), "value": "1"}]},
+        {**answer_bundle(Answer("x")), "quantities": [{**Quantity("x.a", "number", 1.0).as_dict(), "kind": "new"}]},
     ],
 )
 def test_what_no_study_gave(data: Any) -> None:
