@@ -10,8 +10,9 @@ from bandbook.errors import PhysicsError
 from bandbook.model import Model
 from bandbook.solver.filling import energy_per_cell, fermi_energy
 from bandbook.solver.hamiltonian import band_energies
+from bandbook.solver.labels import is_backbone
 from bandbook.solver.masses import Mass, mass_at
-from bandbook.solver.zone import Path, lowest, named_points, path_of, zone_mesh
+from bandbook.solver.zone import Path, favoured_places, lowest, named_points, path_of, zone_mesh
 
 Real = NDArray[np.float64]
 
@@ -19,6 +20,8 @@ Real = NDArray[np.float64]
 TOUCH: Final = 1e-8
 #: Sites of the largest cell whose bands are computed on meshes.
 MOST_SITES: Final = 1500
+#: Bands up to which each band's range is refined.
+MOST_REFINED: Final = 12
 
 
 @dataclass(frozen=True)
@@ -56,6 +59,7 @@ class Bands:
         energy_per_cell: Occupied states, both spins, eV; ``None`` where the mesh does not settle.
         mass_hole: At the top of the valence band.
         mass_electron: At the bottom of the conduction band.
+        has_extended_zone: Whether the crystal is one unbranched chain, whose bands unfold (:func:`extended_k`).
     """
 
     path: Path
@@ -73,6 +77,13 @@ class Bands:
     energy_per_cell: float | None
     mass_hole: Mass
     mass_electron: Mass
+    has_extended_zone: bool
+
+    @property
+    def widths(self) -> Real:
+        """Width of each band, eV, ``(band,)``."""
+        widths: Real = self.ranges[:, 1] - self.ranges[:, 0]
+        return widths
 
 
 @dataclass(frozen=True)
@@ -105,12 +116,11 @@ def solve_bands(model: Model, *, n_points: int = 240) -> Bands:
         found = f"the cell has {model.n_sites} sites"
         raise PhysicsError(f"{found}; bands are computed up to {MOST_SITES}; take a smaller cell")
     path = path_of(model, n_points)
-    mesh = zone_mesh(model)
-    values = band_energies(model, mesh)
-    ranges = _ranges(model, mesh, values)
+    zone = _Zone(model)
+    ranges = _ranges(zone)
     width = float(ranges.max() - ranges.min())
-    edges = _edges(model, mesh, values, width)
-    direct_gap, direct_k = _direct(model, mesh, values, edges)
+    edges = _edges(zone, width)
+    direct_gap, direct_k = _direct(zone, edges)
     fermi = fermi_energy(model, edges.kind, _energy(edges.valence), _energy(edges.conduction))
     return Bands(
         path=path,
@@ -125,9 +135,10 @@ def solve_bands(model: Model, *, n_points: int = 240) -> Bands:
         conduction=edges.conduction,
         fermi_energy=fermi,
         total_width=width,
-        energy_per_cell=energy_per_cell(model, edges.kind, fermi),
+        energy_per_cell=energy_per_cell(model, edges.kind, fermi, closest=direct_k),
         mass_hole=_mass(model, edges.valence, edges.kind, width),
         mass_electron=_mass(model, edges.conduction, edges.kind, width),
+        has_extended_zone=is_backbone(model),
     )
 
 
@@ -135,33 +146,58 @@ def _energy(extreme: Extreme | None) -> float | None:
     return None if extreme is None else extreme.energy
 
 
-def _ranges(model: Model, mesh: Real, values: Real) -> Real:
+class _Zone:
+    """The bands of a crystal on a mesh of the whole zone, and extremes between its points."""
+
+    def __init__(self, model: Model) -> None:
+        self.model = model
+        self.mesh = zone_mesh(model)
+        self.values = band_energies(model, self.mesh)
+        self.favoured = favoured_places(model)
+
+    def least(self, band: int, *, sign: int = 1) -> tuple[float, Real]:
+        """Return the least energy of a band (the least of its negative with ``sign`` −1) and where it is."""
+
+        def energy(k: Real) -> Real:
+            return sign * band_energies(self.model, k)[:, band]
+
+        return lowest(energy, self.mesh, sign * self.values[:, band], favoured=self.favoured)
+
+    def least_distance(self, band: int) -> tuple[float, Real]:
+        """Return the least vertical distance of a band from the one below and where it is."""
+
+        def distance(k: Real) -> Real:
+            energies = band_energies(self.model, k)
+            return np.asarray(energies[:, band] - energies[:, band - 1])
+
+        values = self.values[:, band] - self.values[:, band - 1]
+        return lowest(distance, self.mesh, values, favoured=self.favoured)
+
+
+def _ranges(zone: _Zone) -> Real:
     """Return the refined range of each band; bands of large cells keep what the mesh found, all but the outermost."""
-    n_bands = values.shape[1]
-    ranges = np.stack([values.min(axis=0), values.max(axis=0)], axis=1)
-    chosen = range(n_bands) if n_bands <= 12 else (0, n_bands - 1)
-    for band in chosen:
-        ranges[band, 0] = _least(model, mesh, values, band=band, sign=1)[0]
-        ranges[band, 1] = -_least(model, mesh, values, band=band, sign=-1)[0]
+    n_bands = zone.values.shape[1]
+    ranges = np.stack([zone.values.min(axis=0), zone.values.max(axis=0)], axis=1)
+    for band in range(n_bands):
+        if n_bands <= MOST_REFINED or band == 0:
+            ranges[band, 0] = zone.least(band)[0]
+        if n_bands <= MOST_REFINED or band == n_bands - 1:
+            ranges[band, 1] = -zone.least(band, sign=-1)[0]
     return ranges
 
 
-def _least(model: Model, mesh: Real, values: Real, *, band: int, sign: int) -> tuple[float, Real]:
-    return lowest(lambda k: sign * band_energies(model, k)[:, band], mesh, sign * values[:, band])
-
-
-def _edges(model: Model, mesh: Real, values: Real, width: float) -> _Edges:
-    n_filled = model.n_electrons / 2
+def _edges(zone: _Zone, width: float) -> _Edges:
+    n_filled = zone.model.n_electrons / 2
     if n_filled != round(n_filled):
         return _Edges(None, None, "band partly filled", 0.0)
     filled = round(n_filled)
     valence = conduction = None
     if filled > 0:
-        top = _least(model, mesh, values, band=filled - 1, sign=-1)
-        valence = Extreme(-top[0], tuple(float(part) for part in top[1]), filled)
-    if filled < model.n_sites:
-        bottom = _least(model, mesh, values, band=filled, sign=1)
-        conduction = Extreme(bottom[0], tuple(float(part) for part in bottom[1]), filled + 1)
+        top = zone.least(filled - 1, sign=-1)
+        valence = Extreme(-top[0], _tuple(top[1]), filled)
+    if filled < zone.model.n_sites:
+        bottom = zone.least(filled)
+        conduction = Extreme(bottom[0], _tuple(bottom[1]), filled + 1)
     if valence is None or conduction is None:
         return _Edges(valence, conduction, "insulator", None)
     gap = conduction.energy - valence.energy
@@ -171,24 +207,20 @@ def _edges(model: Model, mesh: Real, values: Real, width: float) -> _Edges:
     return _Edges(valence, conduction, kind, 0.0)
 
 
-def _direct(model: Model, mesh: Real, values: Real, edges: _Edges) -> tuple[float | None, tuple[float, ...] | None]:
+def _direct(zone: _Zone, edges: _Edges) -> tuple[float | None, tuple[float, ...] | None]:
     if edges.valence is None or edges.conduction is None:
         return None, None
-    band = edges.conduction.band - 1
+    found, k = zone.least_distance(edges.conduction.band - 1)
+    return max(0.0, found), _tuple(k)
 
-    def distance(k: Real) -> Real:
-        energies = band_energies(model, k)
-        return energies[:, band] - energies[:, band - 1]
 
-    found, k = lowest(distance, mesh, values[:, band] - values[:, band - 1])
-    return max(0.0, found), tuple(float(part) for part in k)
+def _tuple(k: Real) -> tuple[float, ...]:
+    return tuple(float(part) for part in k)
 
 
 def _mass(model: Model, extreme: Extreme | None, kind: str, width: float) -> Mass:
-    if extreme is None or kind != "insulator":
-        return Mass(
-            None,
-            (),
-            "no gap, so no extreme of its own" if extreme is not None or kind != "insulator" else "no such band",
-        )
+    if kind != "insulator":
+        return Mass(None, (), "no gap, so no extreme of its own")
+    if extreme is None:
+        return Mass(None, (), "no such band")
     return mass_at(model, np.array(extreme.k), band=extreme.band - 1, width=width)

@@ -1,5 +1,6 @@
 """H(k) and S(k) of a crystal, their derivatives, and the band energies; cell gauge, k in π/a along each vector."""
 
+import math
 from typing import Any
 
 import numpy as np
@@ -53,21 +54,32 @@ def _add(matrices: Complex, start: int, end: int, values: NDArray[np.inexact[Any
     matrices[:, end, start] += values.conj()
 
 
-def bloch_derivative(model: Model, k: Real, axis: int) -> tuple[Complex, Complex | None]:
-    """Return ∂H/∂k and ∂S/∂k along one lattice vector, k in radians per cell.
+def bloch_derivative(model: Model, k: Real, *axes: int) -> tuple[Complex, Complex | None]:
+    """Return the derivatives of H(k) and S(k) along one lattice vector, or the second ones along two; k in radians.
+
+    ∂H/∂θ_a = Σ_R i R_a H(R) e^{ik·R}, ∂²H/∂θ_a∂θ_b = −Σ_R R_a R_b H(R) e^{ik·R}, θ_a = k·a_a.
 
     Args:
         model: The crystal.
         k: Wave vectors, π/a, ``(n_k, dimension)``.
-        axis: The lattice vector, from 0.
+        axes: The lattice vectors, from 0: one for the first derivative, two for a second.
+
+    Returns:
+        ``(n_k, site, site)`` each, eV and a plain number; ``None`` where no bond has overlap.
+
+    >>> from bandbook.model import Coupling, Site
+    >>> chain = Model((Site("A"),), (Coupling(0, 0, -1.0, (1,)),), dimension=1)
+    >>> k = np.array([[0.0], [0.5]])
+    >>> [bloch_derivative(chain, k, *axes)[0].real.round(12).ravel().tolist() for axes in ((0,), (0, 0))]
+    [[0.0, 2.0], [2.0, 0.0]]
     """
     k = np.asarray(k, dtype=np.float64).reshape(len(k), model.dimension)
     h = np.zeros((len(k), model.n_sites, model.n_sites), dtype=np.complex128)
     s = np.zeros_like(h) if model.has_overlap else None
     for coupling in model.couplings:
-        step = coupling.cell[axis]
+        step = math.prod(coupling.cell[axis] for axis in axes)
         if step:
-            factor = 1j * step * np.exp(1j * np.pi * (k @ np.array(coupling.cell, dtype=np.float64)))
+            factor = 1j ** len(axes) * step * np.exp(1j * np.pi * (k @ np.array(coupling.cell, dtype=np.float64)))
             _add(h, coupling.start, coupling.end, coupling.beta * factor)
             if s is not None:
                 _add(s, coupling.start, coupling.end, coupling.overlap * factor)
@@ -93,6 +105,8 @@ def band_energies(model: Model, k: Real) -> Real:
 
 def _energies(model: Model, k: Real) -> Real:
     h, s = bloch(model, k)
+    if model.n_sites == 1 and s is None:
+        return np.asarray(h[:, 0].real)
     energies: Real = np.linalg.eigvalsh(h if s is None else orthogonalised(h, s, k)[0]).astype(np.float64)
     return energies
 

@@ -1,5 +1,6 @@
 """Named points and paths of the zone, and extremes of a function of k searched in the whole of it."""
 
+import itertools
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
@@ -14,10 +15,13 @@ Function = Callable[[Real], Real]
 
 #: Points of the whole-zone mesh along each lattice vector, by dimension; multiples of 6, so that K is among them.
 MESH: Final = {1: 600, 2: 60, 3: 18}
-#: Mesh points from which a refinement starts.
-STARTS: Final = 6
-#: Rounds of refinement; each shrinks the neighbourhood to a third.
-ROUNDS: Final = 32
+#: Valleys of the mesh from which a refinement starts at most.
+STARTS: Final = 12
+#: Rounds of refinement, each with 7 points along each vector, and by how much each shrinks the neighbourhood.
+ROUNDS: Final = 30
+SHRINK: Final = 0.45
+#: Values closer than this part of the range are equal when a place is chosen.
+TIE: Final = 1e-11
 
 
 @dataclass(frozen=True)
@@ -48,6 +52,17 @@ def named_points(model: Model) -> dict[str, tuple[float, ...]]:
     if model.dimension == 2:
         return _plane_points(model)
     return {"Gamma": (0.0, 0.0, 0.0), "X": (1.0, 0.0, 0.0), "M": (1.0, 1.0, 0.0), "R": (1.0, 1.0, 1.0)}
+
+
+def favoured_places(model: Model) -> Real:
+    """Return the named points and those with k = −k, π/a, ``(place, dimension)``: extremes are told there first.
+
+    >>> from bandbook.model import Site
+    >>> favoured_places(Model((Site("A"),), (), dimension=1)).tolist()
+    [[0.0], [1.0]]
+    """
+    still = itertools.product((0.0, 1.0), repeat=model.dimension)
+    return np.array(list(dict.fromkeys([*named_points(model).values(), *still])))
 
 
 def _plane_points(model: Model) -> dict[str, tuple[float, ...]]:
@@ -98,25 +113,52 @@ def zone_mesh(model: Model, n_each: int | None = None) -> Real:
     return np.stack(np.meshgrid(*[axis] * model.dimension, indexing="ij"), axis=-1).reshape(-1, model.dimension)
 
 
-def lowest(function: Function, mesh: Real, values: Real) -> tuple[float, Real]:
+def lowest(function: Function, mesh: Real, values: Real, *, favoured: Real | None = None) -> tuple[float, Real]:
     """Return the least value of a function of k and where it is, searched in the whole zone.
 
-    The best mesh points are refined by ever smaller neighbourhoods, which finds smooth minima and cone points alike.
+    Every valley of the mesh that could hold the least value is refined by ever smaller neighbourhoods, which finds
+    smooth minima and cone points alike. Among equal places a favoured one is taken, the first; otherwise the one with
+    the largest first coordinate, then the largest second, so that k does not hang on the last bits.
 
     Args:
         function: k ``(n, dimension)`` → values ``(n,)``.
-        mesh: Points of the whole zone, π/a.
+        mesh: An even mesh of the whole zone as :func:`zone_mesh` makes it, π/a.
         values: The function there.
+        favoured: Places that are taken when the function is as low there, π/a, ``(place, dimension)``.
     """
-    dimension = mesh.shape[1]
-    order = np.argsort(values, kind="stable")[: STARTS if dimension > 1 else 2 * STARTS]
-    spacing = 1.0 / MESH[1] if dimension == 1 else 2.0 / round(len(mesh) ** (1 / dimension))
-    best = (float(values[order[0]]), mesh[order[0]])
-    for start in order:
-        found = _refined(function, mesh[start], spacing)
-        if found[0] < best[0] - 1e-13:
-            best = found
-    return best
+    spacing = float(mesh[-1, -1] - mesh[-2, -1])
+    grid = values.reshape([round(len(mesh) ** (1 / mesh.shape[1]))] * mesh.shape[1])
+    found = [_refined(function, mesh[start], spacing) for start in _valleys(grid, is_periodic=mesh.shape[1] > 1)]
+    least = min(value for value, _ in found)
+    near = least + TIE * max(float(np.ptp(values)), 1e-3)
+    if favoured is not None and len(favoured):
+        there = function(favoured)
+        equal = np.flatnonzero(there <= near)
+        if len(equal):
+            return float(there[equal[0]]), favoured[equal[0]]
+    return least, max((k for value, k in found if value <= near), key=_place)
+
+
+def _place(k: Real) -> tuple[float, ...]:
+    return tuple(float(part) for part in np.round(k, 6) + 0.0)
+
+
+def _valleys(grid: Real, *, is_periodic: bool) -> list[int]:
+    """Return the flat indices of mesh points no higher than any neighbour, lowest first, that could be the least.
+
+    Between mesh points a function can fall by no more than half its largest step from one mesh point to the next.
+    """
+    lowest_near, largest = grid, 0.0
+    for axis in range(grid.ndim):
+        width = ((1, 1) if axis == at else (0, 0) for at in range(grid.ndim))
+        padded = np.pad(lowest_near, tuple(width), mode="wrap" if is_periodic else "edge")
+        parts = [np.take(padded, np.arange(shift, shift + grid.shape[axis]), axis=axis) for shift in range(3)]
+        lowest_near = np.minimum(np.minimum(parts[0], parts[1]), parts[2])
+        largest += float(np.abs(np.diff(grid, axis=axis)).max(initial=0.0))
+    flat = grid.ravel()
+    candidates = np.flatnonzero((flat <= lowest_near.ravel()) & (flat <= flat.min() + largest))
+    order = candidates[np.argsort(np.round(flat[candidates], 9), kind="stable")]
+    return [int(number) for number in order[:STARTS]]
 
 
 def _refined(function: Function, k: Real, width: float) -> tuple[float, Real]:
@@ -129,5 +171,5 @@ def _refined(function: Function, k: Real, width: float) -> tuple[float, Real]:
         number = int(np.argmin(found))
         if found[number] < value:
             value, k = float(found[number]), points[number]
-        width /= 2.0
+        width *= SHRINK
     return value, k
