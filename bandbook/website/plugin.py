@@ -108,8 +108,10 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
 
 
 def _inclusion(path: Path, tree: Path) -> Any:
-    """Return that a case is a page outside the navigation, which grows with the square of its entries."""
-    return InclusionLevel.NOT_IN_NAV if path.is_relative_to(tree / "cases") else InclusionLevel.UNDEFINED
+    """Return that a case or a parameter set stands outside the navigation, whose cost is the square of its length."""
+    folder, *below = path.relative_to(tree).parts
+    is_apart = folder == "cases" or (folder == "parameters" and len(below) > 1)
+    return InclusionLevel.NOT_IN_NAV if is_apart else InclusionLevel.UNDEFINED
 
 
 def _dress(config: Any) -> None:
