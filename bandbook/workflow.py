@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
-from bandbook import cases, notebooks, pages, records, registry, store
+from bandbook import cases, notebooks, pages, records, registry, report, store
 from bandbook.errors import AuthorError, BandbookError, Problem, exit_status
 from bandbook.parameters import one_of
 from bandbook.settings import Settings
@@ -177,6 +177,16 @@ def write_pages(settings: Settings, finished: Finished) -> Path:
     )
     view = pages.BookView(settings.title, finished.checked.book, views, override)
     return pages.write_tree(view, settings.store / "pages")
+
+
+def write_report(settings: Settings, finished: Finished, file: Path) -> None:
+    """Write the reference values of a run as a test report, whole or not at all."""
+    entries = []
+    for outcome in finished.outcomes:
+        failed = (str(outcome.failure),) if outcome.failure else ()
+        told = (*(str(problem) for problem in outcome.problems), *failed)
+        entries.append(report.Entry(outcome.checked.case.id, outcome.checked.case.file, outcome.record, told))
+    store.write_file(file, report.report_bytes(settings.title, entries))
 
 
 def start(folder: Path) -> list[str]:

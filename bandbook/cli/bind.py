@@ -5,26 +5,32 @@ from pathlib import Path
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell
+from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell, writable
 from bandbook.website import build_site
 
 
 @click.command(epilog=EXIT_HELP)
 @click.option("--to", metavar="DIR", type=click.Path(file_okay=False), help="Where the pages go (default: site_dir).")
 @click.option("--again", is_flag=True, help="Run also what is fresh.")
+@click.option(
+    "--junit", metavar="FILE", type=click.Path(path_type=Path), help="Write the reference values as a test report."
+)
 @click.pass_context
-def bind(context: click.Context, to: str | None, again: bool) -> None:  # noqa: FBT001 - a flag of the command line
+def bind(context: click.Context, to: str | None, again: bool, junit: Path | None) -> None:  # noqa: FBT001 - a flag of the command line
     r"""Run what is stale, then write the web pages. A failing case never stops the others.
 
     \b
     Example:
       bandbook bind
-      bandbook bind --to /tmp/pages
+      bandbook bind --to pages --junit report.xml
     """
     settings = settings_of(context)
+    target = writable(junit.absolute()) if junit else None
     finished = workflow.run(settings, (), again=again, progress=progress())
     for message in finished.messages:
         tell(message)
+    if target:
+        workflow.write_report(settings, finished, target)
     tree = workflow.write_pages(settings, finished)
     build_site(settings, tree, site_dir=Path(to).resolve() if to else None)
     click.echo(finished.summary)

@@ -1,5 +1,6 @@
 """What every command shares: the book it works on, how errors are told, and progress."""
 
+import os
 import sys
 from collections.abc import Callable
 from pathlib import Path
@@ -7,7 +8,7 @@ from typing import Any
 
 import click
 
-from bandbook.errors import BandbookError
+from bandbook.errors import AuthorError, BandbookError, Problem, printable
 from bandbook.settings import Settings, read_settings
 
 #: Where ``--help`` points for the meaning of an exit status.
@@ -43,6 +44,22 @@ def settings_of(context: click.Context) -> Settings:
     """
     book = context.find_root().obj
     return read_settings(Path(book) if book else None, Path.cwd())
+
+
+def writable(file: Path) -> Path:
+    """Return a file that a command may write.
+
+    Raises:
+        AuthorError: It is a folder, or its folder does not exist or cannot be written.
+    """
+    shown, place = printable(str(file)), printable(str(file.parent))
+    if file.is_dir():
+        raise AuthorError([Problem(f"{shown} is a folder", "the name of a file", "name a file in it")])
+    if not file.parent.is_dir():
+        raise AuthorError([Problem(f"{place} is no folder", "a folder that exists", "make it first")])
+    if not os.access(file.parent, os.W_OK):
+        raise AuthorError([Problem(f"{place} cannot be written", "a folder with the right to write", "name another")])
+    return file
 
 
 def tell(message: str) -> None:

@@ -5,6 +5,7 @@ verified at every read; nothing that differs between two runs of the same thing 
 """
 
 from bandbook.store.failure import Failure
+from bandbook.store.files import write_file
 from bandbook.store.keys import canonical_json, code_digest, digest, environment, inputs_of, key_of
 from bandbook.store.result import Result
 from bandbook.store.store import Harvested, Store
@@ -20,4 +21,5 @@ __all__ = [
     "environment",
     "inputs_of",
     "key_of",
+    "write_file",
 ]

@@ -6,6 +6,7 @@ import subprocess
 import sys
 from collections.abc import Callable
 from pathlib import Path
+from xml.etree import ElementTree
 
 import pytest
 
@@ -120,8 +121,11 @@ def test_a_failing_case_stops_no_other(code: str, status: int, words: str, make_
     root = make_book({"bad": WORKINGS % code, "good": case_text})
     settings = root / "mkdocs.yml"
     settings.write_text(settings.read_text().replace("- bandbook", "- bandbook:\n      timeout: 5"), encoding="utf-8")
-    done = bandbook("bind", folder=root)
+    done = bandbook("bind", "--junit", "report.xml", folder=root)
     assert (done.returncode, last(done)) == (status, "executed 1, fresh 0, failed 1"), done.stderr
+    report = ElementTree.parse(root / "report.xml").getroot()  # noqa: S314 - our own report
+    assert [report.get(name) for name in ("tests", "failures", "errors", "skipped")] == ["2", "0", "1", "0"]
+    assert words in (report.findtext("testsuite/testcase/error") or "")
     assert "content/cases/bad.md:15: " in done.stderr
     assert words in done.stderr
     page = (root / "site/cases/bad/index.html").read_text(encoding="utf-8")
@@ -159,6 +163,13 @@ def test_a_notebook_reruns_elsewhere(make_book: MakeBook, case_text: str, tmp_pa
     done = subprocess.run([sys.executable, "-c", code], cwd=elsewhere, capture_output=True, text=True, check=True)
     stored = json.loads((folder / "result.json").read_text(encoding="utf-8"))["quantities"]
     assert json.loads(done.stdout.splitlines()[-1]) == stored
+
+
+@pytest.mark.parametrize("target", ["content", "no/report.xml"])
+def test_a_report_that_cannot_be_written_is_refused_before_a_run(target: str, make_book: MakeBook) -> None:
+    done = bandbook("bind", "--junit", target, folder=make_book())
+    assert (done.returncode, done.stdout) == (2, "")
+    assert "folder" in done.stderr
 
 
 def test_check_loads_nothing_heavy(make_book: MakeBook) -> None:
