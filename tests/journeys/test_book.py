@@ -6,7 +6,7 @@ import subprocess
 import sys
 from collections.abc import Callable
 from pathlib import Path
-from xml.etree import ElementTree
+from xml.etree import ElementTree as ET
 
 import pytest
 
@@ -123,7 +123,7 @@ def test_a_failing_case_stops_no_other(code: str, status: int, words: str, make_
     settings.write_text(settings.read_text().replace("- bandbook", "- bandbook:\n      timeout: 5"), encoding="utf-8")
     done = bandbook("bind", "--junit", "report.xml", folder=root)
     assert (done.returncode, last(done)) == (status, "executed 1, fresh 0, failed 1"), done.stderr
-    report = ElementTree.parse(root / "report.xml").getroot()  # noqa: S314 - our own report
+    report = ET.parse(root / "report.xml").getroot()  # noqa: S314 - our own report
     assert [report.get(name) for name in ("tests", "failures", "errors", "skipped")] == ["2", "0", "1", "0"]
     assert words in (report.findtext("testsuite/testcase/error") or "")
     assert "content/cases/bad.md:15: " in done.stderr
