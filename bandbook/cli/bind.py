@@ -5,11 +5,11 @@ from pathlib import Path
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell, writable
-from bandbook.website import build_site
+from bandbook.cli.door import EXIT_HELP, Command, progress, settings_of, tell, writable
+from bandbook.website import build_site, check_folder
 
 
-@click.command(epilog=EXIT_HELP)
+@click.command(cls=Command, epilog=EXIT_HELP)
 @click.option("--to", metavar="DIR", type=click.Path(file_okay=False), help="Where the pages go (default: site_dir).")
 @click.option("--again", is_flag=True, help="Run also what is fresh.")
 @click.option(
@@ -25,6 +25,7 @@ def bind(context: click.Context, to: str | None, again: bool, junit: Path | None
       bandbook bind --to pages --junit report.xml
     """
     settings = settings_of(context)
+    folder = check_folder(Path(to).resolve() if to else settings.site)
     target = writable(junit.absolute()) if junit else None
     finished = workflow.run(settings, (), again=again, progress=progress())
     for message in finished.messages:
@@ -32,6 +33,6 @@ def bind(context: click.Context, to: str | None, again: bool, junit: Path | None
     if target:
         workflow.write_report(settings, finished, target)
     tree = workflow.write_pages(settings, finished)
-    build_site(settings, tree, site_dir=Path(to).resolve() if to else None)
+    build_site(settings, tree, site_dir=folder if to else None)
     click.echo(finished.summary)
     context.exit(finished.exit_status)

@@ -20,6 +20,8 @@ from bandbook.website.navigation import navigation
 log = logging.getLogger("mkdocs.plugins.bandbook")
 _PICTURE = re.compile(r'<img data-inline(?:="")? src="([^"]+)" alt="[^"]*"\s*/?>')
 _ASSETS = "assets/bandbook"
+#: A file of every site that is built, by which its folder is known again.
+MARK = ".bound"
 _LIGHT = {"media": "(prefers-color-scheme: light)", "scheme": "default"}
 _DARK = {"media": "(prefers-color-scheme: dark)", "scheme": "slate"}
 #: Key of the theme → what it holds when a book says nothing, and what we put there: no font from another host, our
@@ -105,6 +107,12 @@ class BandbookPlugin(BasePlugin[BandbookOptions]):
             return picture.read_text(encoding="utf-8") if is_ours else match[0]
 
         return _PICTURE.sub(inline, output)
+
+    def on_post_build(self, *, config: Any) -> None:
+        """Mark the folder as one that may be built into again."""
+        (Path(config.site_dir) / MARK).write_text(
+            "Pages of a book; replaced when it is bound again.\n", encoding="utf-8"
+        )
 
 
 def _inclusion(path: Path, tree: Path) -> Any:
