@@ -1,7 +1,7 @@
 """Reference values and recorded values, as a case states them."""
 
 from collections.abc import Collection, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Final, Protocol
 
 from bandbook.cases.book import Book, source_problem
@@ -80,7 +80,7 @@ def read_references(
         wrong = _quantity(quantity, promised) if kind == "reference" else _form(quantity)
         if isinstance(row, Mapping):
             checked, mistakes = check(fields, row)
-            wrong += [*mistakes, *_origin(checked, book)]
+            wrong += [*(_in_own_unit(problem) for problem in mistakes), *_origin(checked, book)]
         else:
             checked = {}
             wrong.append(Problem("found no table", "{ value = …, within = …, source = … }", "write a table"))
@@ -88,6 +88,13 @@ def read_references(
         if not wrong:
             references.append((key, Reference(quantity, **{"within": None, **checked})))
     return references, problems
+
+
+def _in_own_unit(problem: Problem) -> Problem:
+    """Return what is wrong with a row; of another unit, that a quantity's own needs no word."""
+    if problem.key != ("unit",):
+        return problem
+    return replace(problem, remedy="leave it out to compare in the quantity's own unit")
 
 
 def _rows(table: Mapping[str, Any]) -> list[tuple[Key, str, Any]]:

@@ -6,7 +6,7 @@ from typing import Any, Final
 
 from bandbook.cases.sets import ParameterSet
 from bandbook.errors import Problem, key_text
-from bandbook.parameters import listed, near, one_of, shortened
+from bandbook.parameters import FromSet, listed, near, one_of, shortened
 
 Key = tuple[str | int, ...]
 #: Keys whose text is never a number, except among the arguments of an author's function.
@@ -71,8 +71,9 @@ def _one(
         return 1.0, [], [one_of(name, sorted(sets), "parameter set").below(*key)]
     if entry not in sets[name].values:
         return 1.0, [], [_unknown(entry, sets[name]).below(*key)]
-    number = sets[name].values[entry].value
-    return number, [ParameterUse(name, entry, key_text(key), block, number)], []
+    found = sets[name].values[entry]
+    number = FromSet(found.value, found.unit, f"@{name}.{entry}")
+    return number, [ParameterUse(name, entry, key_text(key), block, found.value)], []
 
 
 def _is_word(key: Key) -> bool:

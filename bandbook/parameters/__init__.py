@@ -6,6 +6,7 @@ against it and returns the checked parameters, plain JSON, together with every :
 
 from bandbook.errors import Problem
 from bandbook.parameters.field import MOST_CELLS, REQUIRED, Field, describe
+from bandbook.parameters.from_set import FromSet
 from bandbook.parameters.reading import KINDS, check
 from bandbook.parameters.words import NAME, listed, near, one_of, plain_name, shortened, shown
 
@@ -15,6 +16,7 @@ __all__ = [
     "NAME",
     "REQUIRED",
     "Field",
+    "FromSet",
     "Problem",
     "check",
     "describe",

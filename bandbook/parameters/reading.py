@@ -8,6 +8,7 @@ from typing import Any, Final
 
 from bandbook.errors import Problem
 from bandbook.parameters.field import MOST_CELLS, Field, bound, describe
+from bandbook.parameters.from_set import FromSet
 from bandbook.parameters.words import NAME, listed, near, plain_name, shortened, shown
 
 #: Whole numbers up to here are exact as floats and in JSON.
@@ -83,6 +84,9 @@ def _is_numeral(text: str) -> bool:
 
 
 def _number(field: Field, value: object) -> Checked:
+    if isinstance(value, FromSet) and field.unit and value.unit not in {"", field.unit}:
+        found = f'"{value.origin}" is {float(value):g} {shortened(value.unit)}'
+        return None, [Problem(found, f"allowed is {describe(field)}", f"name a value in {field.unit}")]
     if isinstance(value, bool) or not isinstance(value, int | float) or not _is_finite(value):
         return _wrong(field, value)
     if not _in_range(field, value):
