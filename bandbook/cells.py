@@ -12,7 +12,7 @@ from typing import Any
 import numpy as np
 
 from bandbook import registry
-from bandbook.errors import AuthorError, Problem
+from bandbook.errors import AuthorError, PhysicsError, Problem, WorkingsError
 from bandbook.exhibits import MIME, Answer, Figure, Quantity, answer_bundle, typeset
 from bandbook.model import Model
 from bandbook.parameters import NAME
@@ -36,7 +36,12 @@ class Systems(Mapping[str, Model]):
 
     def __getitem__(self, name: str) -> Model:
         if name not in self._built:
-            self._built[name] = registry.build_system(self._checked[name], self._namespace)
+            try:
+                self._built[name] = registry.build_system(self._checked[name], self._namespace)
+            except AuthorError as error:  # told at the system's block, whichever study asks first
+                raise AuthorError([problem.at(f"system {name}", 0) for problem in error.problems]) from error
+            except (PhysicsError, WorkingsError) as error:
+                raise type(error)(f"system {name}:0: {error}") from error
         return self._built[name]
 
     def __iter__(self) -> Iterator[str]:
@@ -44,6 +49,22 @@ class Systems(Mapping[str, Model]):
 
     def __len__(self) -> int:
         return len(self._checked)
+
+
+class Results(dict[str, Answer]):
+    """What the studies above gave, by name."""
+
+    def __missing__(self, name: str) -> Answer:
+        known = ", ".join(self) or "none so far"
+        raise KeyError(f"no study {name!r} above this block; answered are: {known}")
+
+
+class Files(dict[str, str]):
+    """The text of each file that front matter ``uses`` names, by path."""
+
+    def __missing__(self, path: str) -> str:
+        known = ", ".join(self) or "none"
+        raise KeyError(f"{path!r} is not embedded; add it to uses in the front matter; embedded are: {known}")
 
 
 def begin(parameters: Mapping[str, Any], *, seed: int, namespace: Mapping[str, Any]) -> Scope:
@@ -56,7 +77,7 @@ def begin(parameters: Mapping[str, Any], *, seed: int, namespace: Mapping[str, A
     """
     _prepare_figures()
     systems = Systems(parameters["systems"], namespace)
-    results: dict[str, Answer] = {}
+    results = Results()
 
     def answer(study: str) -> None:
         """Ask a study and display what it gives."""
@@ -64,7 +85,7 @@ def begin(parameters: Mapping[str, Any], *, seed: int, namespace: Mapping[str, A
         results[study] = registry.answer(study, checked, systems[checked["system"]])
         _display(results[study])
 
-    return systems, results, dict(parameters["files"]), np.random.default_rng(seed), report, answer
+    return systems, results, Files(parameters["files"]), np.random.default_rng(seed), report, answer
 
 
 def report(name: str, value: float | None, unit: str = "", meaning: str = "") -> None:

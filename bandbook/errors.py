@@ -79,11 +79,13 @@ class BandbookError(Exception):
 
     Attributes:
         step: Number of the notebook step in which it arose, from 1; 0 outside a run.
+        system: The system of the case at whose block it is told; empty where it is told at the step.
         notebook: The notebook as far as it ran, as the bytes of its file; empty outside a run.
     """
 
     exit_status = 1
     step = 0
+    system = ""
     notebook = b""
 
 
@@ -95,9 +97,11 @@ class WorkingsError(BandbookError):
         source: The cell's source.
         traceback: The traceback as plain text.
         line: The line of the case file at which the failing block starts; 0 when unknown.
+        offset: The line of the block that failed, from 1; 0 when unknown.
     """
 
     exit_status = 1
+    offset = 0
 
     def __init__(self, message: str, *, cell: int = 0, source: str = "", traceback: str = "", line: int = 0) -> None:
         super().__init__(message)

@@ -211,9 +211,13 @@ def answer(study: str, checked: Mapping[str, Any], model: Model) -> Answer:
     """Return what a study gives: compute, then report, tabulate, draw and warn.
 
     Raises:
+        AuthorError: What a check could not see, because only workings build the model.
         PhysicsError: The question makes no sense for the model, or the numbers failed.
     """
     analysis = analysis_of(checked["question"])
+    problems = analysis.inspect(checked, model)
+    if problems:
+        raise AuthorError(problems)
     asked = Asked(study, checked, model)
     result = analysis.compute(asked)
     quantities = tuple(

@@ -4,12 +4,12 @@ A flat list of calls; prints nothing. To follow one case from file to page, read
 """
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
 from bandbook import cases, notebooks, pages, records, registry, report, store
-from bandbook.errors import AuthorError, BandbookError, Problem, exit_status
+from bandbook.errors import AuthorError, BandbookError, IntegrityError, Problem, exit_status
 from bandbook.parameters import one_of
 from bandbook.settings import Settings
 
@@ -108,8 +108,15 @@ def check(settings: Settings, wanted: Sequence[str] = ()) -> Checked:
     chosen = [case for case in book.cases if not wanted or case.id in wanted]
     unknown = [name for name in wanted if name not in {case.id for case in book.cases}]
     if unknown:
-        raise AuthorError([one_of(name, [case.id for case in book.cases], "case") for name in unknown])
+        raise AuthorError([_no_case(name, [case.id for case in book.cases]) for name in unknown])
     return Checked(book, tuple(cases.check_case(case, book, _Vocabulary()) for case in chosen))
+
+
+def _no_case(name: str, known: Sequence[str]) -> Problem:
+    """Return that there is no such case; of a file name, the case that it holds."""
+    plain = name.removeprefix("./").removeprefix("content/").removeprefix("cases/").removesuffix(".md")
+    problem = one_of(name, known, "case")
+    return replace(problem, remedy=f'write "{plain}"') if plain in known else problem
 
 
 def run(
@@ -126,8 +133,14 @@ def run(
     run_one: Runner = runner or notebooks.local_runner(timeout=settings.timeout)
     outcomes = []
     for number, case in enumerate(checked.cases, start=1):
-        progress(f"[{number}/{len(checked.cases)}] {case.case.id}")
-        outcomes.append(_outcome(case, shelf, checked.book, run_one, again=again))
+
+        def told(
+            parameters: dict[str, Any], key: str, where: str = f"[{number}/{len(checked.cases)}] {case.case.id}"
+        ) -> notebooks.Harvest:
+            progress(where)
+            return run_one(parameters, key)
+
+        outcomes.append(_outcome(case, shelf, checked.book, told, again=again))
     return Finished(checked, tuple(outcomes), tuple(shelf.set_aside))
 
 
@@ -165,7 +178,9 @@ def _outcome(
 
 def _kept(checked: cases.CheckedCase, shelf: store.Store, error: BandbookError, key: str) -> store.Failure:
     """Keep why a case failed, placed at the block that failed."""
-    line = checked.blocks.get(f"step-{getattr(error, 'step', 0)}", 0)
+    line = checked.blocks.get(f"step-{error.step}", 0)
+    if error.system:
+        line = checked.blocks.get(f"system {error.system}", line)
     return shelf.keep_failure(error, case=checked.case.id, key=key, file=checked.case.file, line=line)
 
 
@@ -211,17 +226,18 @@ def start(folder: Path) -> list[str]:
     return [*written, ".gitignore"]
 
 
-def listing(settings: Settings) -> list[dict[str, Any]]:
-    """Return a row a case: id, title, status, key quantities."""
+def listing(finished: Finished) -> list[dict[str, Any]]:
+    """Return a row a case: id, title, status, whether every reference value agrees, key quantities."""
     return [
         {
             "case": outcome.checked.case.id,
             "title": outcome.checked.case.front.title,
             "status": outcome.status,
+            "agrees": outcome.record.agrees if outcome.record and outcome.record.references else None,
             "quantities": outcome.record.key_quantities if outcome.record else [],
             "summary": outcome.record.summary if outcome.record else "",
         }
-        for outcome in look(settings).outcomes
+        for outcome in finished.outcomes
     ]
 
 
@@ -230,10 +246,24 @@ def record_of(settings: Settings, case: str) -> dict[str, Any]:
 
     Raises:
         AuthorError: There is no such case, it has mistakes, or it has not been run yet.
+        IntegrityError: Its result is damaged.
     """
-    (outcome,) = look(settings, (case,)).outcomes
+    finished = look(settings, (case,))
+    (outcome,) = finished.outcomes
     if outcome.record is None and outcome.problems:
         raise AuthorError(outcome.problems)
+    if finished.set_aside:
+        raise IntegrityError("\n".join(finished.set_aside))
+    if outcome.record is None and outcome.failure:
+        raise AuthorError(
+            [
+                Problem(
+                    f'case "{case}" failed at its last run: {outcome.failure}',
+                    "a record needs a finished run",
+                    f"mend it, then call bandbook run {case}",
+                )
+            ]
+        )
     if outcome.record is None:
         found = f'case "{case}" has no result under its current parameters'
         raise AuthorError([Problem(found, "a record needs a finished run", f"call bandbook run {case}")])

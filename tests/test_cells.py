@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from bandbook import cells
-from bandbook.errors import AuthorError, PhysicsError
+from bandbook.errors import AuthorError
 from bandbook.exhibits import MIME
 from bandbook.model import Coupling, Model, Site
 from bandbook.registry import check_study, check_system
@@ -142,6 +142,6 @@ def test_a_question_without_sense_leaves_no_result() -> None:
     built, _ = check_system({"built_by": "ring"})
     given = {**parameters(), "systems": {"system": built}}
     _, results, *_, answer = cells.begin(given, seed=1, namespace={"ring": lambda: ring})
-    with pytest.raises(PhysicsError, match="a molecule has no bands"):
+    with pytest.raises(AuthorError, match="the system is a molecule; bands need a periodic system"):
         answer("bands")
     assert results == {}

@@ -47,7 +47,7 @@ class CheckedCase:
         recorded: Values kept as recorded.
         uses: Places that rest on parameter sets.
         problems: Every mistake, placed, in file order.
-        blocks: Study, or ``step-n`` of a workings block → line of its fence.
+        blocks: Study, ``system`` and its name, or ``step-n`` of a workings block → line of its fence.
     """
 
     case: Case
@@ -164,6 +164,7 @@ def _check_systems(desk: _Desk) -> None:
             checked = desk.kept(block, desk.vocabulary.check_system(table), failed)
             _check_builder(desk, block, checked)
         desk.systems.setdefault(name, checked)
+        desk.blocks.setdefault(f"system {name}", block.line)
 
 
 def _check_builder(desk: _Desk, block: Block, checked: Checked | None) -> None:

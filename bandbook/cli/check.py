@@ -3,11 +3,11 @@
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import EXIT_HELP, settings_of, tell
+from bandbook.cli.door import EXIT_HELP, Command, settings_of, tell
 from bandbook.errors import AuthorError
 
 
-@click.command(epilog=EXIT_HELP)
+@click.command(cls=Command, epilog=EXIT_HELP)
 @click.argument("cases", nargs=-1, metavar="[CASE…]")
 @click.pass_context
 def check(context: click.Context, cases: tuple[str, ...]) -> None:
@@ -22,4 +22,4 @@ def check(context: click.Context, cases: tuple[str, ...]) -> None:
     problems = checked.problems
     if problems:
         raise AuthorError(problems)
-    tell(f"{len(checked.cases)} cases, no mistake")
+    tell(f"{len(checked.cases)} case{'' if len(checked.cases) == 1 else 's'}, no mistake")

@@ -18,8 +18,22 @@ EXIT_HELP = (
 )
 
 
+class Command(click.Command):
+    r"""A command whose help keeps the lines of its example: ``\b`` stands above them in a raw docstring."""
+
+    def format_help_text(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
+        """Write the help."""
+        self.help = (self.help or "").replace(r"\b", "\b")
+        super().format_help_text(ctx, formatter)
+
+
 class Door(click.Group):
     """A group of commands whose errors are told on stderr, never as a traceback."""
+
+    def format_help_text(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
+        """Write the help."""
+        self.help = (self.help or "").replace(r"\b", "\b")
+        super().format_help_text(ctx, formatter)
 
     def invoke(self, context: click.Context) -> Any:
         """Run the command; a book's own error becomes its message and its exit status."""
@@ -28,6 +42,9 @@ class Door(click.Group):
         except BandbookError as error:
             tell(str(error))
             context.exit(error.exit_status)
+        except KeyboardInterrupt:
+            tell("interrupted; what was finished is kept, call the command again to go on")
+            context.exit(130)
         except OSError as error:
             tell(
                 f"{error.filename or 'the system'}: {error.strerror or error}; the book must be readable and writable;"

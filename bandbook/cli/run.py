@@ -3,10 +3,10 @@
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import EXIT_HELP, progress, settings_of, tell
+from bandbook.cli.door import EXIT_HELP, Command, progress, settings_of, tell
 
 
-@click.command(epilog=EXIT_HELP)
+@click.command(cls=Command, epilog=EXIT_HELP)
 @click.argument("cases", nargs=-1, metavar="[CASE…]")
 @click.option("--again", is_flag=True, help="Run also what is fresh.")
 @click.pass_context

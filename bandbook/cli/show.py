@@ -6,10 +6,10 @@ from typing import Any
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import settings_of
+from bandbook.cli.door import Command, settings_of
 
 
-@click.command()
+@click.command(cls=Command)
 @click.argument("case")
 @click.option("--json", "as_json", is_flag=True, help="Print record.json.")
 @click.pass_context

@@ -5,10 +5,10 @@ from pathlib import Path
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import tell
+from bandbook.cli.door import Command, tell
 
 
-@click.command()
+@click.command(cls=Command)
 @click.argument("folder", type=click.Path(file_okay=False))
 def start(folder: str) -> None:
     r"""Write a new book: settings, one case, a parameter set, a workflow file for CI.

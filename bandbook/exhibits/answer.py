@@ -40,7 +40,9 @@ class Answer:
         for quantity in self.quantities:
             if quantity.name == f"{self.study}.{name}":
                 return quantity.value
-        raise KeyError(name)
+        names = [quantity.name.partition(".")[2] for quantity in self.quantities]
+        shown = ", ".join(names[:20]) + (", …" if len(names) > 20 else "")
+        raise KeyError(f"the study {self.study!r} has no quantity {name!r}; it has {shown}")
 
 
 def answer_bundle(answer: Answer) -> dict[str, Any]:

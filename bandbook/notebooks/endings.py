@@ -98,28 +98,42 @@ def _failed(error: Any, ended: Ended) -> BandbookError:
     traceback = "\n".join(outputs[-1].traceback) if outputs else f"{name}: {value}"
     if name == "SystemExit":
         return _died(error, Ended(ended.notebook, ended.index, ended.timeout, 0))
+    if ended.is_study:
+        return _refused(name, value, traceback, ended)
     if ended.step == 0:
         return RunError(f"the kernel could not begin ({name}: {value}); it needs bandbook; mend the installation")
-    if ended.is_study and name == "PhysicsError":
-        return PhysicsError(value)
-    if ended.is_study and name == "AuthorError":
-        return AuthorError([_problem(line) for line in value.splitlines()] or [_problem("")])
-    if ended.is_study and name in _NUMERICAL:
-        allowed = "every number must be finite and every matrix solvable"
-        return PhysicsError(f"the numbers failed ({name}: {value}); {allowed}; ask a smaller or a simpler system")
-    return WorkingsError(
-        _sentence(name, value, ended), cell=ended.workings, source=ended.cell.source, traceback=traceback
-    )
-
-
-def _sentence(name: str, value: str, ended: Ended) -> str:
-    what = f"{name}: {value}" if value else name
-    if ended.is_study:
-        return f"{what}; a study must end without an exception; look at its traceback and at the code it uses"
+    text = f"{_what(name, value)}; workings must run to their end; mend them, then run again"
     lines = [line for output in ended.cell.outputs for line in output.get("traceback", [])]
     own = re.findall(rf"Cell In\[{ended.cell.execution_count}\], line (\d+)", "\n".join(lines))
-    place = f" (line {own[-1]} of the block)" if own else ""
-    return f"{what}{place}; workings must run to their end; mend them, then run again"
+    failed = WorkingsError(text, cell=ended.workings, source=ended.cell.source, traceback=traceback)
+    failed.offset = int(own[-1]) if own else 0
+    return failed
+
+
+def _refused(name: str, value: str, traceback: str, ended: Ended) -> BandbookError:
+    """Return the error of a failing study, told at the block of its system where the model could not be built."""
+    prefix = re.match(r"system (\w+):0: ", value)
+    lines = [line.removeprefix(prefix[0] if prefix else "") for line in value.splitlines()] or [""]
+    found: BandbookError
+    if name == "AuthorError":
+        found = AuthorError([_problem(line) for line in lines])
+    elif name == "PhysicsError":
+        found = PhysicsError("\n".join(lines))
+    elif name in _NUMERICAL:
+        allowed = "every number must be finite and every matrix solvable"
+        found = PhysicsError(f"the numbers failed ({name}: {value}); {allowed}; ask a smaller or a simpler system")
+    else:
+        allowed = "a study must end without an exception"
+        text = f"{_what(name, value)}; {allowed}; look at its traceback and at the code it uses"
+        found = WorkingsError(
+            "\n".join(lines) if name == "WorkingsError" else text, source=ended.cell.source, traceback=traceback
+        )
+    found.system = prefix[1] if prefix else ""
+    return found
+
+
+def _what(name: str, value: str) -> str:
+    return f"{name}: {value}" if value else name
 
 
 def _problem(line: str) -> Problem:

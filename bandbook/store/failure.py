@@ -50,7 +50,7 @@ def failure_of(error: BandbookError, *, case: str, key: str, file: str, line: in
         key,
         type(error).__name__,
         error.exit_status,
-        _placed(error, file, line or 1),
+        _placed(error, file, (line or 1) + (error.offset if isinstance(error, WorkingsError) else 0)),
         line,
         error.source if isinstance(error, WorkingsError) else "",
         error.traceback if isinstance(error, WorkingsError) else "",

@@ -4,7 +4,7 @@ import inspect as signatures
 from collections.abc import Callable, Mapping
 from typing import Any
 
-from bandbook.errors import AuthorError
+from bandbook.errors import AuthorError, BandbookError, WorkingsError
 from bandbook.model import Model
 from bandbook.parameters import Field, Problem, near
 from bandbook.systems.form import COMMON, Builders, Checked, Form, with_common
@@ -32,6 +32,7 @@ def build(checked: Checked, builders: Builders) -> Model:
     Raises:
         AuthorError: There is no such function, it does not take these arguments, it returns something else, or the
             electrons do not fit.
+        WorkingsError: The function raised an exception.
     """
     name, arguments = checked["built_by"], checked["with"] or {}
     function = builders.get(name)
@@ -41,7 +42,14 @@ def build(checked: Checked, builders: Builders) -> Model:
     if refusal:
         allowed = f"it takes {signatures.signature(function)}"
         raise AuthorError([Problem(f'"{name}": {refusal}', allowed, "correct the table", ("with",))])
-    model = function(**arguments)
+    try:
+        model = function(**arguments)
+    except BandbookError:
+        raise
+    except Exception as error:
+        given = ", ".join(f"{key} = {value!r}" for key, value in arguments.items())
+        found = f'"{name}" called with {given or "no arguments"} raised {type(error).__name__}: {error}'
+        raise WorkingsError(f"{found}; it must return a Model; mend the function or the arguments") from error
     if not isinstance(model, Model):
         found = f'"{name}" returned {type(model).__name__}'
         raise AuthorError([Problem(found, "it returns a bandbook.model.Model", "return a Model", ("built_by",))])

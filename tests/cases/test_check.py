@@ -114,7 +114,15 @@ def test_what_crosses_is_plain_json_in_file_order() -> None:
         "files": {},
     }
     assert json.loads(json.dumps(checked.parameters, allow_nan=False)) == checked.parameters
-    assert dict(checked.blocks) == {"step-1": 4, "gap": 10, "step-2": 10, "step-3": 13, "again": 16, "step-4": 16}
+    assert dict(checked.blocks) == {
+        "system system": 7,
+        "step-1": 4,
+        "gap": 10,
+        "step-2": 10,
+        "step-3": 13,
+        "again": 16,
+        "step-4": 16,
+    }
 
 
 def test_references_to_sets_are_resolved_wherever_a_number_stands() -> None:

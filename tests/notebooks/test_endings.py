@@ -31,9 +31,8 @@ def failing(index: int, name: str, value: str) -> BandbookError:
 def test_a_workings_block_that_raises() -> None:
     error = failing(3, "ValueError", "no; way")
     assert isinstance(error, WorkingsError)
-    assert str(error) == (
-        "ValueError: no; way (line 2 of the block); workings must run to their end; mend them, then run again"
-    )
+    assert error.offset == 2
+    assert str(error) == ("ValueError: no; way; workings must run to their end; mend them, then run again")
     assert (error.cell, error.step, error.source) == (2, 3, SOURCES[3])
     assert "Cell In[4], line 2" in error.traceback
     assert b'"ename": "ValueError"' in error.notebook
@@ -101,3 +100,16 @@ def test_a_run_that_does_not_end(raised: Any, code: int | None, reason: str, wor
     assert (error.reason, error.exit_status, error.step) == (reason, 4, 1)
     assert words in str(error)
     assert str(error).count("; ") == 2, "what was found; what is allowed; what to do"
+
+
+@pytest.mark.parametrize(
+    ("name", "value", "told"),
+    [
+        ("AuthorError", "system two:0: with: found 3; two; add one", "with: found 3; two; add one"),
+        ("PhysicsError", "system two:0: no sites; one is needed; add one", "no sites; one is needed; add one"),
+        ("WorkingsError", 'system two:0: "wall" raised; a Model; mend it', '"wall" raised; a Model; mend it'),
+    ],
+)
+def test_a_system_that_cannot_be_built_is_told_at_its_own_block(name: str, value: str, told: str) -> None:
+    error = failing(2, name, value)
+    assert (type(error).__name__, str(error), error.system) == (name, told, "two")

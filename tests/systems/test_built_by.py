@@ -5,7 +5,7 @@ from typing import Any
 import pytest
 
 from bandbook import lattices, registry
-from bandbook.errors import AuthorError, Problem
+from bandbook.errors import AuthorError, Problem, WorkingsError
 from bandbook.model import Model
 
 
@@ -80,8 +80,12 @@ def test_an_error_of_the_authors_own_is_the_authors_own() -> None:
     def fails() -> Model:
         raise KeyError("mine")
 
-    with pytest.raises(KeyError, match="mine"):
-        registry.build_system(checked(), {"wall": fails})
+    with pytest.raises(WorkingsError) as caught:
+        registry.build_system(checked(**{"with": {"half": 3}}), {"wall": lambda half: fails() if half else None})
+    assert str(caught.value) == (
+        "\"wall\" called with half = 3 raised KeyError: 'mine'; it must return a Model; mend the function or the arguments"
+    )
+    assert isinstance(caught.value.__cause__, KeyError)
 
 
 def test_a_builtin_without_a_signature_is_called() -> None:
