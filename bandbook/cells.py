@@ -14,6 +14,7 @@ import numpy as np
 from bandbook import registry
 from bandbook.errors import AuthorError, PhysicsError, Problem, WorkingsError
 from bandbook.exhibits import MIME, Answer, Figure, Quantity, answer_bundle, typeset
+from bandbook.exhibits.paper import in_use, pack_displays, use
 from bandbook.model import Model
 from bandbook.parameters import NAME
 
@@ -67,14 +68,22 @@ class Files(dict[str, str]):
         raise KeyError(f"{path!r} is not embedded; add it to uses in the front matter; embedded are: {known}")
 
 
-def begin(parameters: Mapping[str, Any], *, seed: int, namespace: Mapping[str, Any]) -> Scope:
+def begin(
+    parameters: Mapping[str, Any],
+    *,
+    seed: int,
+    namespace: Mapping[str, Any],
+    paper: Mapping[str, Any] | None = None,
+) -> Scope:
     """Return what a notebook works with: systems, results, files, rng, report, answer.
 
     Args:
         parameters: The checked parameters of a case.
         seed: Seeds ``rng``; taken from the key.
         namespace: The notebook's globals, where an author's functions stand.
+        paper: What figures are drawn for, in place of a page.
     """
+    use(paper)
     _prepare_figures()
     systems = Systems(parameters["systems"], namespace)
     results = Results()
@@ -121,6 +130,9 @@ def _prepare_figures() -> None:
     import matplotlib as mpl
 
     mpl.rcParams["svg.hashsalt"] = "bandbook"
+    paper = in_use()
+    if paper:
+        pack_displays(shell.display_formatter.formatters, paper)
 
 
 def _shell() -> Any:

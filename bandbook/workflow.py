@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
-from bandbook import cases, notebooks, pages, records, registry, report, store
+from bandbook import cases, notebooks, pages, papers, records, registry, report, store
 from bandbook.errors import AuthorError, BandbookError, IntegrityError, Problem, exit_status
 from bandbook.parameters import one_of
 from bandbook.settings import Settings
@@ -204,6 +204,40 @@ def write_report(settings: Settings, finished: Finished, file: Path) -> None:
     store.write_file(file, report.report_bytes(settings.title, entries))
 
 
+@dataclass(frozen=True)
+class Drawing:
+    """A figure that is asked for a paper: case, figure, file, width with its unit, font size in points."""
+
+    case: str
+    figure: str
+    to: Path
+    width: str
+    font_size: float
+
+
+def draw(
+    settings: Settings, asked: Drawing, *, progress: Progress = lambda _: None, runner: Runner | None = None
+) -> list[Path]:
+    """Draw a figure of a case for a paper, and return what was written: the drawing and the tables of its study.
+
+    Raises:
+        AuthorError: What is asked is not allowed, or the case has mistakes.
+    """
+    paper = papers.check_paper(asked.width, asked.font_size, asked.to.suffix)
+    (checked,) = check(settings, (asked.case,)).cases
+    if checked.parameters is None:
+        raise AuthorError(checked.problems)
+    parameters, key = papers.up_to(checked.parameters, asked.figure), store.key_of(checked.parameters)
+    progress(f"{asked.case}: {asked.figure}")
+    run_one: Runner = runner or notebooks.drawing_runner(timeout=settings.timeout, paper=paper)
+    try:
+        found = run_one(parameters, key)
+    except BandbookError as error:
+        line = checked.blocks.get(f"step-{error.step}", 1)
+        raise store.placed_error(error, file=checked.case.file, line=line) from None
+    return papers.write(papers.files_of(found, asked.figure, asked.to), store.write_file)
+
+
 def start(folder: Path) -> list[str]:
     """Write a new book and return what was written.
 
@@ -217,7 +251,8 @@ def start(folder: Path) -> list[str]:
     written = []
     for path in sorted(pattern.rglob("*")):
         if path.is_file():
-            name = path.relative_to(pattern).as_posix().replace("github/", ".github/workflows/", 1)
+            name = path.relative_to(pattern).as_posix()
+            name = name.replace("github/", ".github/workflows/", 1).replace("gitlab/", ".", 1)
             target = folder / name
             target.parent.mkdir(parents=True, exist_ok=True)
             target.write_bytes(path.read_bytes())

@@ -10,12 +10,13 @@ from bandbook import __version__
 from bandbook.cli.bind import bind
 from bandbook.cli.check import check
 from bandbook.cli.door import Door
+from bandbook.cli.draw import draw
 from bandbook.cli.list import list_cases
 from bandbook.cli.run import run
 from bandbook.cli.show import show
 from bandbook.cli.start import start
 
-COMMANDS = (start, check, run, bind, list_cases, show)
+COMMANDS = (start, check, run, bind, list_cases, show, draw)
 
 
 @click.group(cls=Door, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})

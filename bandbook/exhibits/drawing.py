@@ -12,6 +12,7 @@ from collections.abc import Callable, Sequence
 from typing import Any, Final
 
 from bandbook.exhibits.figure import Figure
+from bandbook.exhibits.paper import Paper, in_use, renamed, saved
 
 #: Role → (sentinel colour while drawing, custom property, light value).
 COLOURS: Final = {
@@ -98,6 +99,9 @@ def drawn(
     with mpl.rc_context():
         mpl.rcdefaults()
         mpl.rcParams.update(STYLE)
+        paper = in_use()
+        if paper:
+            return Figure(name, _on_paper(paper, strokes, height=height, columns=columns), *words)
         canvas = Canvas(figsize=(WIDTH, height), layout="constrained")
         FigureCanvasSVG(canvas)
         axes = canvas.subplots(1, columns, squeeze=False, sharey=True)[0]
@@ -106,6 +110,24 @@ def drawn(
         canvas.savefig(out, format="svg", metadata={"Date": None, "Creator": None, "Format": None, "Type": None})
     svg = finished(out.getvalue(), f"{study}-{name}" if study else name, words[0])
     return Figure(name, svg, *words)
+
+
+def _on_paper(paper: Paper, strokes: Callable[[Any], None], *, height: float, columns: int) -> str:
+    """Return a figure for a paper, packed: fixed light colours on white."""
+    import matplotlib as mpl
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.figure import Figure as Canvas
+    from matplotlib.layout_engine import ConstrainedLayoutEngine
+
+    mpl.rcParams.update({"savefig.transparent": False})
+    values = {sentinel: value for sentinel, _, value in COLOURS.values()} | {PAPER: "#FFFFFF"}
+    with renamed(values):
+        layout = ConstrainedLayoutEngine(wspace=0.08 if columns > 1 else 0.02)  # numbers of two axes stay apart
+        canvas = Canvas(figsize=paper.canvas(WIDTH, height), layout=layout)
+        FigureCanvasAgg(canvas)
+        axes = canvas.subplots(1, columns, squeeze=False, sharey=True)[0]
+        strokes(axes if columns > 1 else axes[0])
+        return saved(canvas, paper)
 
 
 def finished(svg: str, prefix: str, alt: str) -> str:
@@ -150,7 +172,12 @@ def key(axes: Any) -> None:
     """Name the signs of an axes above the figure, where nothing can lie below them."""
     handles, labels = axes.get_legend_handles_labels()
     if handles:
-        axes.figure.legend(handles, labels, loc="outside upper left", ncols=min(len(handles), 4), fontsize=8.5)
+        most = min(len(handles), 4)
+        for columns in range(most, 0, -1) if in_use() else (most,):  # a paper may be narrow
+            legend = axes.figure.legend(handles, labels, loc="outside upper left", ncols=columns, fontsize=8.5)
+            if columns == 1 or not in_use() or legend.get_window_extent().width <= axes.figure.bbox.width:
+                return
+            legend.remove()
 
 
 def rule(axes: Any, energy: float, text: str, *, style: str = ":", clear_of: Sequence[Point] = ()) -> None:

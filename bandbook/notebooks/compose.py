@@ -21,19 +21,23 @@ def seed_of(key: str) -> int:
     return int(key.removeprefix("sha256:")[:8], 16)
 
 
-def compose(parameters: Mapping[str, Any], key: str) -> Any:
+def compose(parameters: Mapping[str, Any], key: str, *, paper: Mapping[str, Any] | None = None) -> Any:
     """Return the notebook of checked parameters: a first cell that carries them, then a cell a step, in file order.
 
     Args:
         parameters: Checked parameters, plain JSON.
         key: Their key; seeds the random generator.
+        paper: What its figures are drawn for, in place of a page.
 
     Returns:
         An nbformat 4.5 notebook, not executed.
     """
     import nbformat.v4
 
-    cells = [nbformat.v4.new_markdown_cell(ABOUT, id="about"), _code(first_cell(parameters, key), "parameters")]
+    cells = [
+        nbformat.v4.new_markdown_cell(ABOUT, id="about"),
+        _code(first_cell(parameters, key, paper=paper), "parameters"),
+    ]
     for number, (kind, name) in enumerate(parameters["steps"], start=1):
         source = f"answer({name!r})" if kind == "study" else parameters["workings"][name]
         cells.append(_code(source, f"step-{number}"))
@@ -50,13 +54,14 @@ def _code(source: str, name: str) -> Any:
     return nbformat.v4.new_code_cell(source, id=name)
 
 
-def first_cell(parameters: Mapping[str, Any], key: str) -> str:
+def first_cell(parameters: Mapping[str, Any], key: str, *, paper: Mapping[str, Any] | None = None) -> str:
     """Return the source of the first code cell."""
+    own = f", paper={dict(paper)}" if paper else ""
     literal = pprint.pformat(dict(parameters), width=100, sort_dicts=True)
     return (
         "from bandbook.cells import begin\n\n"
         f"parameters = {literal}\n"
         "systems, results, files, rng, report, answer = begin(\n"
-        f"    parameters, seed={seed_of(key)}, namespace=globals()\n"
+        f"    parameters, seed={seed_of(key)}, namespace=globals(){own}\n"
         ")"
     )

@@ -9,6 +9,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
+from bandbook.exhibits.paper import Paper
 from bandbook.notebooks.compose import compose
 from bandbook.notebooks.endings import Ended, error_of
 from bandbook.notebooks.harvest import Harvest, harvest
@@ -28,6 +29,20 @@ def local_runner(*, timeout: float) -> Callable[[Mapping[str, Any], str], Harves
         notebook = run_notebook(compose(parameters, key), timeout=timeout)
         run = {"began": began, "seconds": time.monotonic() - clock, "host": platform.node()}
         return harvest(notebook, run=run)
+
+    return run_one
+
+
+def drawing_runner(*, timeout: float, paper: Paper) -> Callable[[Mapping[str, Any], str], Harvest]:
+    """Return the runner that executes a case with its figures drawn for a paper.
+
+    Args:
+        timeout: Longest time of one cell, s.
+        paper: What they are drawn for.
+    """
+
+    def run_one(parameters: Mapping[str, Any], key: str) -> Harvest:
+        return harvest(run_notebook(compose(parameters, key, paper=paper.as_dict()), timeout=timeout))
 
     return run_one
 

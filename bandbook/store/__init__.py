@@ -4,7 +4,7 @@ The folder's rule: a result is named by the digest of all that can change it, is
 verified at every read; nothing that differs between two runs of the same thing stands in it.
 """
 
-from bandbook.store.failure import Failure
+from bandbook.store.failure import Failure, placed_error
 from bandbook.store.files import write_file
 from bandbook.store.keys import canonical_json, code_digest, digest, environment, inputs_of, key_of
 from bandbook.store.result import Result
@@ -21,5 +21,6 @@ __all__ = [
     "environment",
     "inputs_of",
     "key_of",
+    "placed_error",
     "write_file",
 ]

@@ -59,6 +59,14 @@ def failure_of(error: BandbookError, *, case: str, key: str, file: str, line: in
     )
 
 
+def placed_error(error: BandbookError, *, file: str, line: int) -> BandbookError:
+    """Return an error of a run, placed at a line of the case file."""
+    if isinstance(error, AuthorError):
+        return AuthorError([problem if problem.file else problem.at(file, line) for problem in error.problems])
+    error.args = (f"{file}:{line}: {error}",)
+    return error
+
+
 def _placed(error: BandbookError, file: str, line: int) -> str:
     if isinstance(error, AuthorError):
         return "\n".join(str(problem if problem.file else problem.at(file, line)) for problem in error.problems)

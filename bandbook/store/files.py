@@ -13,6 +13,9 @@ try:
 except ImportError:  # not on every system; there a lock is a courtesy only
     fcntl = None  # type: ignore[assignment]
 
+_MASK = os.umask(0o077)
+os.umask(_MASK)  # the only way to read it is to set it
+
 
 def write_file(path: Path, data: bytes) -> None:
     """Replace a file by new bytes, whole or not at all.
@@ -28,6 +31,7 @@ def write_file(path: Path, data: bytes) -> None:
                 file.write(data)
                 file.flush()
                 os.fsync(file.fileno())
+            Path(name).chmod(0o666 & ~_MASK)  # mkstemp gives it to its owner alone
             Path(name).replace(path)
         except BaseException:
             Path(name).unlink(missing_ok=True)

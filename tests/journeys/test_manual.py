@@ -99,6 +99,14 @@ def test_ten_minutes(reader: Reader) -> None:
     assert (reader.book / "site/cases/hexatriene/index.html").is_file()
 
 
+def test_what_is_said_of_running_is_seen(reader: Reader) -> None:
+    bandbook("start", "my-book", folder=reader.folder)
+    reader.folder = reader.book
+    assert reader.follow("running.md").count("console") >= 2
+    assert {"on-bands.pdf", "on-bands.csv", "report.xml"} <= {path.name for path in reader.book.iterdir()}
+    assert not (reader.book / "levels.png").exists()
+
+
 @pytest.mark.parametrize(("page", "cases"), [("writing-a-case.md", 6), ("book.md", 1)])
 def test_every_example_runs_and_agrees(page: str, cases: int, reader: Reader) -> None:
     bandbook("start", "my-book", folder=reader.folder)
