@@ -1,6 +1,7 @@
 """The real thing: a book is started, checked, run, bound and looked at, with real kernels."""
 
 import json
+import re
 import shutil
 import subprocess
 import sys
@@ -172,6 +173,42 @@ def test_a_report_that_cannot_be_written_is_refused_before_a_run(target: str, ma
     done = bandbook("bind", "--junit", target, folder=make_book())
     assert (done.returncode, done.stdout) == (2, "")
     assert "folder" in done.stderr
+
+
+def test_figures_for_a_paper_are_the_same_twice_and_leave_the_store_alone(make_book: MakeBook, case_text: str) -> None:
+    code = "import matplotlib.pyplot as plt\nplt.figure(figsize=(6, 2))\nplt.plot([0, 1], rng.random(2))\nplt.show()\n"
+    root = make_book({"a": f"{case_text}\n```python workings\n{code}```\n"})
+    for figure, ending in (("levels.on-bands", "pdf"), ("workings-1.svg", "svg"), ("levels.diagram", "png")):
+        files = []
+        for number in (1, 2):
+            (root / str(number)).mkdir(exist_ok=True)
+            done = bandbook("draw", "a", figure, "--to", f"{number}/x.{ending}", folder=root)
+            assert done.returncode == 0, done.stderr
+            assert done.stdout.splitlines()[0] == str(root / f"{number}/x.{ending}")
+            files.append((root / f"{number}/x.{ending}").read_bytes())
+        assert files[0] == files[1]
+    assert (root / "1/x.csv").read_text(encoding="utf-8").count("\n") >= 5
+    drawing = (root / "1/x.svg").read_text(encoding="utf-8")
+    size = [float(word) for word in re.findall(r' (?:width|height)="([\d.]+)mm"', drawing)]
+    assert size == pytest.approx([85.0, 85 / 3], abs=0.01), "the workings' own proportions at the width of a column"
+    assert not (root / ".bandbook").exists()
+
+
+@pytest.mark.parametrize(
+    ("arguments", "words"),
+    [
+        (["levels.diagram", "--to", "no/x.pdf"], "a folder that exists"),
+        (["levels.diagram", "--to", "content"], "is a folder"),
+        (["levels.diagram", "--to", "x.jpg", "--width", "85"], "30 to 400 mm"),
+        (["bands", "--to", "x.pdf"], 'the case has no study "bands"; its studies are levels'),
+    ],
+)
+def test_a_drawing_that_is_refused(arguments: list[str], words: str, make_book: MakeBook) -> None:
+    root = make_book()
+    done = bandbook("draw", "a", *arguments, folder=root)
+    assert (done.returncode, done.stdout) == (2, "")
+    assert words in done.stderr
+    assert not list(root.glob("x.*"))
 
 
 def test_check_loads_nothing_heavy(make_book: MakeBook) -> None:
