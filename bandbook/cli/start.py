@@ -11,7 +11,7 @@ from bandbook.cli.door import Command, tell
 @click.command(cls=Command)
 @click.argument("folder", type=click.Path(file_okay=False))
 def start(folder: str) -> None:
-    r"""Write a new book: settings, one case, a parameter set, a workflow file for CI.
+    r"""Write a new book: settings, one case, a parameter set, workflow files for CI.
 
     \b
     Example:
