@@ -133,6 +133,7 @@ def _pdf(canvas: Any, paper: Paper) -> bytes:
     file = PdfFile(out, metadata=dict.fromkeys(_OWN["pdf"]))
     try:
         file.newPage(width * scale, height * scale)
+        file.width, file.height = width, height  # what lies outside is left out, and that is measured before scaling
         file.output(scale, 0, 0, scale, 0, 0, Op.concat_matrix)
         renderer = RendererPdf(file, POINTS, height, width)
         canvas.draw(renderer)

@@ -46,6 +46,19 @@ def test_the_svg_has_the_width_and_the_size_of_words() -> None:
     assert re.search(r"font: 10px|font-size: 10px|font: 10\.?0?px", text)
 
 
+def page_of(pdf: bytes) -> bytes:
+    """Return what is drawn on the page of a PDF."""
+    packed = re.findall(rb"FlateDecode[^>]*>>\s*stream\n(.*?)endstream", pdf, re.DOTALL)
+    (page,) = [stream for stream in map(zlib.decompress, packed) if b" Tf" in stream]
+    return page
+
+
+def test_a_pdf_of_half_the_size_holds_the_same_strokes() -> None:
+    whole, half = (page_of(drawn("pdf", width=width, font_size=size)) for width, size in ((6.0, 10.0), (3.0, 5.0)))
+    assert half == whole.replace(b"\n1 0 0 1 0 0 cm\n", b"\n0.5 0 0 0.5 0 0 cm\n", 1)
+    assert half != whole
+
+
 @pytest.mark.parametrize(("millimetres", "size"), [(85, 8.0), (170, 9.0), (85, 6.5)])
 def test_the_pdf_has_the_width_and_its_words_are_text(millimetres: float, size: float) -> None:
     data = drawn("pdf", width=millimetres / 25.4, font_size=size)
@@ -54,10 +67,7 @@ def test_the_pdf_has_the_width_and_its_words_are_text(millimetres: float, size: 
     assert float(box[1]) == pytest.approx(millimetres / 25.4 * 72, abs=1e-3)
     assert b"/Subtype /Type0" in data or b"/Subtype /TrueType" in data
     assert b"/FontFile2" in data
-    streams = [
-        zlib.decompress(part) for part in re.findall(rb"FlateDecode[^>]*>>\s*stream\n(.*?)endstream", data, re.DOTALL)
-    ]
-    (page,) = [stream for stream in streams if b" Tf" in stream]
+    page = page_of(data)
     assert re.search(rb"\A[^q]*?\n%s 0 0 %s 0 0 cm\n" % ((b"%g" % (size / 10),) * 2), page)
     assert re.search(rb" 10 Tf", page)
 

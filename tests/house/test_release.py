@@ -51,8 +51,9 @@ def test_ci_runs_what_the_project_runs() -> None:
     assert (ROOT / ".ci/run").stat().st_mode & 0o111
 
 
-def test_actions_are_pinned_by_commit_with_their_version_beside() -> None:
-    used = re.findall(r"uses: (.*)", CHECKS.read_text(encoding="utf-8"))
+@pytest.mark.parametrize("path", [CHECKS, GITHUB])
+def test_actions_are_pinned_by_commit_with_their_version_beside(path: Path) -> None:
+    used = re.findall(r"uses: (.*)", path.read_text(encoding="utf-8"))
     assert used
     assert all(re.fullmatch(r"[\w./-]+@[0-9a-f]{40} # v\d+\.\d+\.\d+", one) for one in used)
 
