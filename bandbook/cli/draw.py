@@ -5,10 +5,10 @@ from pathlib import Path
 import click
 
 from bandbook import workflow
-from bandbook.cli.door import EXIT_HELP, progress, settings_of, writable
+from bandbook.cli.door import EXIT_HELP, Command, progress, settings_of, writable
 
 
-@click.command(epilog=EXIT_HELP)
+@click.command(cls=Command, epilog=EXIT_HELP)
 @click.argument("case")
 @click.argument("figure")
 @click.option(
