@@ -27,7 +27,9 @@ def bind(context: click.Context, to: str | None, again: bool, junit: Path | None
     settings = settings_of(context)
     folder = check_folder(Path(to).resolve() if to else settings.site)
     target = writable(junit.absolute()) if junit else None
-    finished = workflow.run(settings, (), again=again, progress=progress())
+    told = progress()
+    finished = workflow.run(settings, (), again=again, progress=told)
+    told("")
     for message in finished.messages:
         tell(message)
     if target:

@@ -16,6 +16,8 @@ EXIT_HELP = (
     "Exit: 0 done; 1 failing workings or a reference value disagrees; 2 an author's mistake; 3 the question makes no "
     "sense for the model; 4 a run timed out or died; 5 damaged bytes."
 )
+#: Goes to the start of a terminal's line and clears it.
+CLEAR = "\r\033[K"
 
 
 class Command(click.Command):
@@ -80,18 +82,21 @@ def writable(file: Path) -> Path:
 
 
 def tell(message: str) -> None:
-    """Print a message to stderr."""
-    click.echo(message, err=True)
+    """Print a message to stderr, in place of a line of progress that stands there."""
+    click.echo(f"{CLEAR if sys.stderr.isatty() else ''}{message}", err=True)
 
 
 def progress() -> Callable[[str], None]:
-    """Return what tells progress: a line each on stderr, overwritten where stderr is a terminal."""
-    if not sys.stderr.isatty():
-        return tell
+    """Return what tells progress: a line each on stderr, overwritten where stderr is a terminal.
+
+    An empty line ends it.
+    """
 
     def rewrite(line: str) -> None:
-        click.echo(f"\r\033[K{line}", err=True, nl=False)
-        if not line:
-            click.echo("\r\033[K", err=True, nl=False)
+        click.echo(f"{CLEAR}{line}", err=True, nl=False)
 
-    return rewrite
+    def add(line: str) -> None:
+        if line:
+            tell(line)
+
+    return rewrite if sys.stderr.isatty() else add

@@ -26,5 +26,8 @@ def draw(context: click.Context, case: str, figure: str, *, to: Path, width: str
       bandbook draw butadiene levels.on-bands --to bands.png --width 170mm --font-size 9
     """
     asked = workflow.Drawing(case, figure, writable(to.absolute()), width, font_size)
-    for path in workflow.draw(settings_of(context), asked, progress=progress()):
+    told = progress()
+    written = workflow.draw(settings_of(context), asked, progress=told)
+    told("")
+    for path in written:
         click.echo(path)

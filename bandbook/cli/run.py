@@ -18,7 +18,9 @@ def run(context: click.Context, cases: tuple[str, ...], again: bool) -> None:  #
       bandbook run
       bandbook run polyenes/butadiene --again
     """
-    finished = workflow.run(settings_of(context), cases, again=again, progress=progress())
+    told = progress()
+    finished = workflow.run(settings_of(context), cases, again=again, progress=told)
+    told("")
     for message in finished.messages:
         tell(message)
     click.echo(finished.summary)
