@@ -87,10 +87,14 @@ def begin(
     _prepare_figures()
     systems = Systems(parameters["systems"], namespace)
     results = Results()
+    sketched: set[str] = set()
 
     def answer(study: str) -> None:
         """Ask a study and display what it gives."""
         checked = parameters["studies"][study]
+        if checked["system"] not in sketched:
+            sketched.add(checked["system"])
+            _display(registry.sketch(checked["system"], systems[checked["system"]]))
         results[study] = registry.answer(study, checked, systems[checked["system"]])
         _display(results[study])
 

@@ -4,6 +4,7 @@ from collections.abc import Callable, Mapping, Sequence
 from typing import Any, Protocol, TypeVar
 
 from bandbook.analyses import ANALYSES, Analysis, Asked
+from bandbook.analyses.sketches import sketch_system
 from bandbook.errors import AuthorError, PhysicsError, Problem
 from bandbook.exhibits import Answer, QuantityName
 from bandbook.lattices import LATTICES
@@ -205,6 +206,12 @@ def build_system(checked: Mapping[str, Any], builders: Mapping[str, Callable[...
     1
     """
     return find(checked["form"], FORMS, "form").build(checked, builders)
+
+
+def sketch(name: str, model: Model) -> Answer:
+    """Return the sketch of a system, as the answer of the study ``"system"``; empty where it has too many sites."""
+    figure = sketch_system(name, model)
+    return Answer("system", figures=(figure,) if figure else ())
 
 
 def answer(study: str, checked: Mapping[str, Any], model: Model) -> Answer:

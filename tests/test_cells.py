@@ -79,14 +79,15 @@ def test_random_numbers_come_from_the_seed() -> None:
 def test_an_answer_is_one_display_and_one_for_each_figure(shown: list[tuple[dict[str, Any], dict[str, Any]]]) -> None:
     *_, answer = cells.begin(parameters(), seed=1, namespace={})
     answer("levels")
-    (data, _), *figures = shown
+    (system, _), sketch, (data, _), *figures = shown
+    assert (system[MIME]["study"], sketch[1]["bandbook"]) == ("system", {"study": "system", "figure": "system"})
     assert set(data) == {MIME, "text/plain", "text/html"}
     assert data[MIME]["study"] == "levels"
     assert all("svg" not in figure for figure in data[MIME]["figures"]), "the picture stands in its own display"
     assert "<table" in data["text/html"]
     assert [one["bandbook"] for _, one in figures] == [
-        {"study": "levels", "figure": "diagram"}, {"study": "levels", "figure": "on-bands"}
-    ]  # fmt: skip
+        {"study": "levels", "figure": name} for name in ("sketch", "diagram", "orbitals", "on-bands")
+    ]
     assert all(one["image/svg+xml"].startswith("<svg") and one["text/plain"] for one, _ in figures)
 
 
@@ -102,8 +103,10 @@ def test_what_is_shown_is_harvested(shown: list[tuple[dict[str, Any], dict[str, 
     found = harvest(nbformat.new_notebook(cells=[nbformat.new_code_cell("", id="one", outputs=outputs)]))
     figures = [exhibit["file"] for exhibit in found.exhibits if exhibit["kind"] == "figure"]
     assert figures == [
-        "figures/levels-diagram.svg", "figures/levels-on-bands.svg", "figures/bands.svg", "figures/wide-bands.svg"
-    ]  # fmt: skip
+        "figures/system.svg",
+        *(f"figures/levels-{name}.svg" for name in ("sketch", "diagram", "orbitals", "on-bands")),
+        "figures/bands.svg", "figures/wide-bands.svg",
+    ], "a system is sketched once"  # fmt: skip
     assert set(figures) <= set(found.files)
     assert all(exhibit["study"] != "workings" for exhibit in found.exhibits)
 

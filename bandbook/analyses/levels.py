@@ -29,12 +29,14 @@ class LevelsResult:
         levels: Its levels.
         places: Where they lie on the parent's bands.
         nodes: Node labels, ``None`` where they make no sense.
+        lonely: Sites that the cut leaves with one bond.
     """
 
     piece: Piece
     levels: Levels
     places: Places
     nodes: tuple[float | None, ...] | None
+    lonely: tuple[int, ...] = ()
 
 
 def inspect(study: Mapping[str, Any], model: Model | None) -> list[Problem]:
@@ -47,7 +49,8 @@ def compute(asked: Asked) -> LevelsResult:
     cells = asked.study["cells"] if asked.model.dimension else None
     piece = cut_piece(asked.model, cells=cells, **cut_of(asked.study))
     levels = solve_levels(piece)
-    return LevelsResult(piece, levels, place_on_bands(asked.model, piece, levels), node_labels(piece, levels))
+    places = place_on_bands(asked.model, piece, levels)
+    return LevelsResult(piece, levels, places, node_labels(piece, levels), tuple(dangling(asked.model, piece)))
 
 
 def report(asked: Asked, result: LevelsResult) -> tuple[Quantity, ...]:
@@ -124,7 +127,7 @@ def _cell(value: Any) -> Any:
     return value.item() if isinstance(value, np.generic) else value
 
 
-def dangling(model: Model, piece: Piece) -> list[str]:
+def dangling(model: Model, piece: Piece) -> list[int]:
     """Return the sites that have one bond in the piece and more in the crystal; none for an unbranched chain.
 
     The ends of a chain are what one means; a ribbon or a skeleton with such sites is not the molecule that one means.
@@ -134,10 +137,11 @@ def dangling(model: Model, piece: Piece) -> list[str]:
     bonds = [index for coupling in model.couplings if coupling.beta for index in (coupling.start, coupling.end)]
     in_crystal = np.bincount(np.array(bonds, dtype=np.intp), minlength=model.n_sites)
     lonely = np.flatnonzero((piece.coordination == 1) & (in_crystal[piece.site] > 1))
-    return [
-        f"{model.sites[piece.site[site]].name} of cell {', '.join(str(step) for step in piece.cell[site])}"
-        for site in lonely
-    ]
+    return [int(site) for site in lonely]
+
+
+def _named(model: Model, piece: Piece, site: int) -> str:
+    return f"{model.sites[piece.site[site]].name} of cell {', '.join(str(step) for step in piece.cell[site])}"
 
 
 def warn(asked: Asked, result: LevelsResult) -> tuple[str, ...]:
@@ -146,9 +150,11 @@ def warn(asked: Asked, result: LevelsResult) -> tuple[str, ...]:
     warnings = []
     if levels.is_open_shell:
         warnings.append("Open shell: the highest group is partly filled and counted evenly; the gap is 0.")
-    lonely = dangling(asked.model, piece)
+    lonely = result.lonely
     if lonely:
-        names = ", ".join(lonely[:MOST_NAMED]) + (", …" if len(lonely) > MOST_NAMED else "")
+        names = ", ".join(_named(asked.model, piece, site) for site in lonely[:MOST_NAMED]) + (
+            ", …" if len(lonely) > MOST_NAMED else ""
+        )
         warnings.append(
             f"The cut leaves {counted(len(lonely), 'one-coordinated site')} ({names}); add or drop sites to finish it."
         )

@@ -1,12 +1,14 @@
 """Figures of the question ``levels``: the level diagram, and the levels on the bands of the crystal."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from bandbook.analyses.analysis import Asked, counted, drawable
+from bandbook.analyses.levels_lobes import orbitals
+from bandbook.analyses.sketches import sketch_piece
 from bandbook.exhibits import Figure, typeset
 from bandbook.exhibits import drawing as pen
 from bandbook.solver.hamiltonian import band_energies
@@ -29,11 +31,14 @@ TOUCHING = 0.035
 
 
 def draw(asked: Asked, result: "LevelsResult") -> tuple[Figure, ...]:
-    """Return the level diagram and, for a piece of a one-dimensional crystal, the levels on its bands."""
-    figures = [_diagram(asked, result)]
+    """Return the sketch of a piece, its level diagram and orbitals, and for a 1D crystal the levels on its bands."""
+    study, figures = asked.study, [_diagram(asked, result), orbitals(asked, result)]
+    if asked.model.dimension or study["changes"]:
+        sketch = sketch_piece(asked.name, asked.model, result.piece, asked=study, lonely=result.lonely)
+        figures.insert(0, sketch)
     if asked.model.dimension == 1:
         figures.append(_on_bands(asked, result))
-    return tuple(figures)
+    return tuple(figure for figure in figures if figure is not None)
 
 
 def _gap_words(asked: Asked, result: "LevelsResult") -> str:
@@ -69,10 +74,19 @@ def _diagram(asked: Asked, result: "LevelsResult") -> Figure:
         reach = max(2.2, (float(np.abs(places).max()) + 0.5) / 0.78)
         axes.set_xlim(-reach, reach)
         axes.margins(y=0.08)
-        _name_frontier(axes, result)
+        ends = {
+            name: max(
+                (place for position, place in zip(chosen, places, strict=True) if levels.energy[position] == one),
+                default=0.0,
+            )
+            + 0.5
+            for name, one in (("HOMO", levels.homo), ("LUMO", levels.lumo))
+        }
+        _name_frontier(axes, result, ends)
         pen.energy_axis(axes, beta=asked.model.beta_unit, alpha=asked.model.alpha_unit)
 
-    return pen.drawn("diagram", strokes, words=(f"Level diagram: {words}", caption), study=asked.name)
+    height = min(3.6, max(1.8, 0.12 * len(chosen) + 1.2))
+    return pen.drawn("diagram", strokes, words=(f"Level diagram: {words}", caption), study=asked.name, height=height)
 
 
 def near_fermi(result: "LevelsResult") -> NDArray[np.intp]:
@@ -107,7 +121,7 @@ def _level(axes: Any, energy: float, place: float, occupation: float) -> None:
         )  # fmt: skip
 
 
-def _name_frontier(axes: Any, result: "LevelsResult") -> None:
+def _name_frontier(axes: Any, result: "LevelsResult", reach: Mapping[str, float]) -> None:
     """Write HOMO and LUMO beside their levels, apart from each other; nothing where they are one open group."""
     levels = result.levels
     if levels.is_open_shell:
@@ -117,8 +131,8 @@ def _name_frontier(axes: Any, result: "LevelsResult") -> None:
     for name, energy, side in (("HOMO", levels.homo, "top"), ("LUMO", levels.lumo, "bottom")):
         if energy is not None:
             axes.annotate(
-                name, (1.0, energy), xycoords=("axes fraction", "data"), xytext=(-4, 0), textcoords="offset points",
-                ha="right", va=side if is_close else "center", fontsize=8.5, color=pen.QUIET,
+                name, (reach[name], energy), xytext=(6, 0), textcoords="offset points",
+                ha="left", va=side if is_close else "center", fontsize=pen.SMALL, color=pen.QUIET,
             )  # fmt: skip
 
 
@@ -157,7 +171,7 @@ def _on_bands(asked: Asked, result: "LevelsResult") -> Figure:
     words += "" if len(placed) == len(found) else f" {len(placed)} of them are drawn."
     caption = f"Levels of the piece on the bands of its crystal: {words}{_node_words(nodes)}"
     alt = f"Levels on the bands: {words}"
-    return pen.drawn("on-bands", strokes, words=(alt, caption), study=asked.name, height=4.4)
+    return pen.drawn("on-bands", strokes, words=(alt, caption), study=asked.name, height=3.4)
 
 
 def _on_bands_words(ks: NDArray[np.float64], n_outside: int) -> str:

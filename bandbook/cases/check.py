@@ -2,7 +2,7 @@
 
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field, replace
-from typing import Any, Protocol
+from typing import Any, Final, Protocol
 
 from bandbook.cases.book import Book
 from bandbook.cases.embed import embedded
@@ -16,6 +16,8 @@ from bandbook.errors import Problem
 from bandbook.parameters import NAME, near, shortened
 
 Checked = dict[str, Any]
+#: Names that no study may have, and who has them.
+TAKEN: Final = {"workings": "quantities of workings have it", "system": "sketches of systems have it"}
 
 
 class Vocabulary(Protocol):
@@ -208,9 +210,8 @@ def _check_study(desk: _Desk, block: Block) -> None:
     is_known = not block.is_broken and bool(desk.vocabulary.quantity_names(default))
     if not name or ("name" not in block.table and not is_known):
         desk.unnamed += 1
-    if name == "workings":
-        remedy = "choose another name"
-        desk.note(block, Problem('the name "workings" is taken', "quantities of workings have it", remedy, ("name",)))
+    if name in TAKEN:
+        desk.note(block, Problem(f'the name "{name}" is taken', TAKEN[name], "choose another name", ("name",)))
     elif name and name in desk.studies:
         desk.note(block, _twice("study", name))
     checked = None

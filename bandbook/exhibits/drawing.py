@@ -7,6 +7,7 @@ takes the page's colours and one opened alone is readable.
 import hashlib
 import html
 import io
+import math
 import re
 from collections.abc import Callable, Sequence
 from typing import Any, Final
@@ -60,8 +61,13 @@ STYLE: Final[dict[str, Any]] = {
     "mathtext.fontset": "dejavusans",
     "path.simplify": False,
 }
-#: Inches; a page scales the figure to the width of its column.
-WIDTH: Final = 6.4
+#: Inches; narrow, so that the words are still read when a phone shrinks the figure. A page enlarges it a little.
+WIDTH: Final = 5.2
+#: Points of the smaller words of a figure.
+SMALL: Final = 9.0
+#: Inches of a sign in the key with the space around it, and of a letter of the smaller words.
+_HANDLE: Final = 0.52
+_LETTER: Final = 0.076
 _TAG: Final = re.compile(r"<[^>]*>")
 _NUMBER: Final = re.compile(r"-?\d+\.\d{3,}")
 _ID: Final = re.compile(r'(\bid="|href="#|url\(#)([^")]+)')
@@ -79,7 +85,7 @@ def drawn(
     *,
     words: tuple[str, str],
     study: str = "",
-    height: float = 3.8,
+    height: float = 3.2,
     columns: int = 1,
 ) -> Figure:
     """Return the figure that ``strokes`` makes, in the one style whatever the style of the kernel is.
@@ -172,12 +178,28 @@ def key(axes: Any) -> None:
     """Name the signs of an axes above the figure, where nothing can lie below them."""
     handles, labels = axes.get_legend_handles_labels()
     if handles:
-        most = min(len(handles), 4)
-        for columns in range(most, 0, -1) if in_use() else (most,):  # a paper may be narrow
-            legend = axes.figure.legend(handles, labels, loc="outside upper left", ncols=columns, fontsize=8.5)
+        widest = _HANDLE + _LETTER * max(len(label) for label in labels)
+        most = max(1, min(len(handles), int(WIDTH / widest)))
+        for columns in range(most, 0, -1):
+            legend = axes.figure.legend(
+                handles, labels, loc="outside upper left", ncols=columns, fontsize=SMALL, handlelength=1.8,
+                columnspacing=1.2,
+            )  # fmt: skip
             if columns == 1 or not in_use() or legend.get_window_extent().width <= axes.figure.bbox.width:
-                return
+                return  # a paper may be narrow, and is measured
             legend.remove()
+
+
+def hatching() -> Any:
+    """Return a marker of slanted lines inside a circle, for what is negative: a second sign besides its colour."""
+    from matplotlib.path import Path
+
+    corners: list[Point] = []
+    for offset in (-0.5, 0.0, 0.5):
+        half = math.sqrt(1 - offset**2)
+        ends = ((offset - half, -offset - half), (offset + half, -offset + half))
+        corners += [(round(x / math.sqrt(2), 4), round(y / math.sqrt(2), 4)) for x, y in ends]
+    return Path(corners, [Path.MOVETO, Path.LINETO] * 3)
 
 
 def rule(axes: Any, energy: float, text: str, *, style: str = ":", clear_of: Sequence[Point] = ()) -> None:
@@ -196,7 +218,7 @@ def rule(axes: Any, energy: float, text: str, *, style: str = ":", clear_of: Seq
     x, side = _clearest(axes, energy, reach=0.0075 * len(text), points=clear_of)
     axes.annotate(
         text, (x, energy), xycoords=("axes fraction", "data"), xytext=(0, 3 * side), textcoords="offset points",
-        ha="center", va="bottom" if side > 0 else "top", fontsize=8.5, color=QUIET,
+        ha="center", va="bottom" if side > 0 else "top", fontsize=SMALL, color=QUIET,
     )  # fmt: skip
 
 
@@ -222,5 +244,5 @@ def end_label(axes: Any, energy: float, text: str) -> None:
     """Write a rule's value at its right end, outside the axes."""
     axes.annotate(
         text, (1.0, energy), xycoords=("axes fraction", "data"), xytext=(4, 0), textcoords="offset points",
-        ha="left", va="center", fontsize=8.5, color=QUIET, annotation_clip=False,
+        ha="left", va="center", fontsize=SMALL, color=QUIET, annotation_clip=False,
     )  # fmt: skip

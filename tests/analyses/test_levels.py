@@ -9,7 +9,7 @@ import pytest
 
 from bandbook import lattices
 from bandbook.analyses.levels_figures import margin_columns, side_by_side
-from bandbook.exhibits import Answer
+from bandbook.exhibits import Answer, Figure
 from bandbook.model import Coupling, Model, Site
 
 Ask = Callable[..., Answer]
@@ -20,6 +20,10 @@ CHAIN = lattices.chain(beta=-2.5)
 ALTERNATING = lattices.alternating_chain(beta_inside=-2.85, beta_between=-2.15)
 ENDED = lattices.alternating_chain(beta_inside=-2.15, beta_between=-2.85)
 POLYACENE = lattices.polyacene(beta=-2.5)
+
+
+def figure(answer: Answer, name: str) -> Figure:
+    return next(one for one in answer.figures if one.name == name)
 
 
 def heads(answer: Answer) -> list[str]:
@@ -39,7 +43,7 @@ def test_an_open_chain_has_both_labels(ask: Ask, column: Column, n: int) -> None
 
 def test_four_atoms_show_both_labels_in_words(ask: Ask, texts: Texts) -> None:
     answer = ask(CHAIN, "levels", cells=4)
-    caption = answer.figures[1].caption
+    caption = figure(answer, "on-bands").caption
     assert "k = 0.200, 0.400, 0.600, 0.800 π/a" in caption
     assert "node labels 0.000, 0.333, 0.667, 1.000 of π/spacing" in caption
     assert "no k" in caption
@@ -55,7 +59,7 @@ def test_butadiene(ask: Ask) -> None:
     assert by_name["gap"].in_beta == pytest.approx(math.sqrt(5) - 1, abs=1e-9)
     assert by_name["pi_energy"].in_beta == pytest.approx(2 * math.sqrt(5), abs=1e-9)
     assert (by_name["open_shell"].value, by_name["gap_levels"].value) == (0.0, 0.0)
-    assert [figure.name for figure in answer.figures] == ["diagram", "on-bands"]
+    assert [figure.name for figure in answer.figures] == ["sketch", "diagram", "orbitals", "on-bands"]
 
 
 def test_alpha_counts_once_an_electron(ask: Ask) -> None:
@@ -75,7 +79,7 @@ def test_benzene_has_no_k(ask: Ask, column: Column) -> None:
     assert answer.value("gap_levels") is None
     assert answer.value("k_1") is None
     assert not {"k", "w", "k_extended", "node_label", "place"} & set(heads(answer))
-    assert len(answer.figures) == 1
+    assert [figure.name for figure in answer.figures] == ["diagram", "orbitals"]
 
 
 def test_anthracene_is_a_finished_piece(ask: Ask) -> None:
@@ -108,7 +112,7 @@ def test_end_levels_are_counted_and_placed(ask: Ask, column: Column, texts: Text
     assert answer.value("gap_levels") == 2
     assert answer.value("k_8") is None
     assert [place for place in column(answer, "levels", "place") if place] == ["both ends", "both ends"]
-    assert "2 gap levels at the left margin" in answer.figures[1].caption
+    assert "2 gap levels at the left margin" in figure(answer, "on-bands").caption
     assert {"gap level, occupied", "gap level, empty"} <= set(texts(answer, "on-bands"))
     assert ask(ALTERNATING, "levels", cells=8).value("gap_levels") == 0
 
@@ -141,7 +145,7 @@ def test_nothing_filled_has_no_answer(ask: Ask) -> None:
     answer = ask(empty, "levels", cells=3)
     assert (answer.value("homo"), answer.value("gap")) == (None, None)
     assert answer.value("lumo") == pytest.approx(-math.sqrt(2), abs=1e-9)
-    assert "no gap" in answer.figures[0].caption
+    assert "no gap" in figure(answer, "diagram").caption
 
 
 def test_large_pieces_keep_true_numbers(ask: Ask) -> None:
@@ -160,15 +164,15 @@ def test_large_pieces_keep_true_numbers(ask: Ask) -> None:
 def test_every_electron_is_drawn(ask: Ask, cells: int) -> None:
     """As many dots as electrons, however the levels are filled."""
     answer = ask(CHAIN, "levels", cells=cells)
-    dots = [line for line in answer.figures[0].svg.splitlines() if "<use" in line and "--bb-series-1" in line]
+    dots = [line for line in figure(answer, "diagram").svg.splitlines() if "<use" in line and "--bb-series-1" in line]
     assert len(dots) == cells
 
 
 def test_many_levels_are_thinned_and_said(ask: Ask) -> None:
     answer = ask(CHAIN, "levels", cells=400)
-    assert "The 40 around the Fermi energy are drawn." in answer.figures[0].caption
-    assert "of them are drawn" in answer.figures[1].caption
-    assert len(answer.figures[1].svg) < 100_000
+    assert "The 40 around the Fermi energy are drawn." in figure(answer, "diagram").caption
+    assert "of them are drawn" in figure(answer, "on-bands").caption
+    assert len(figure(answer, "on-bands").svg) < 100_000
     assert len(answer.tables[0].rows) == 400
 
 
@@ -181,7 +185,7 @@ def test_a_plane_has_levels_without_k(ask: Ask, column: Column) -> None:
     """The ring of 4 × 4 cells of a square lattice: E = 2β(cos + cos), six levels at 0."""
     answer = ask(lattices.square(beta=-1.0), "levels", cells=[4, 4], ends="ring")
     assert column(answer, "levels", "degeneracy").count(6) == 6
-    assert [figure.name for figure in answer.figures] == ["diagram"]
+    assert [figure.name for figure in answer.figures] == ["sketch", "diagram", "orbitals"]
 
 
 def test_groups_stand_side_by_side() -> None:

@@ -71,7 +71,7 @@ def test_words_are_there_and_escaped() -> None:
 def test_the_page_sets_the_width() -> None:
     root = ET.fromstring(figure().svg)  # noqa: S314 - our own figure
     assert root.get("width") is root.get("height") is None
-    assert root.get("viewBox", "").startswith("0 0 460.8 ")
+    assert root.get("viewBox", "").startswith("0 0 374.4 ")
 
 
 def test_text_is_text_in_the_font_of_the_page() -> None:
