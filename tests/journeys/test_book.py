@@ -105,7 +105,7 @@ def test_an_emptied_store_gives_the_same_bytes(make_book: MakeBook, case_text: s
         return {path.relative_to(store).as_posix(): path.read_bytes() for path in paths}
 
     first = content()
-    assert sum(name.endswith(".svg") for name in first) == 3
+    assert sum(name.endswith(".svg") for name in first) == 6
     shutil.rmtree(root / ".bandbook")
     assert content() == first
 
