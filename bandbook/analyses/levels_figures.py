@@ -227,7 +227,7 @@ def margin_columns(energies: NDArray[np.float64], height: float) -> NDArray[np.i
 
 
 def _bands(axes: Any, asked: Asked, result: "LevelsResult") -> None:
-    k = np.linspace(0.0, 1.0, 201)
+    k = np.linspace(0.0, 1.0, 121)
     energies = drawable(band_energies(asked.model, k[:, None]))
     filled = round(asked.model.n_electrons / 2)
     low = max(0, min(filled - MOST_BANDS // 2, energies.shape[1] - MOST_BANDS))

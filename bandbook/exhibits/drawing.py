@@ -14,6 +14,7 @@ from typing import Any, Final
 
 from bandbook.exhibits.figure import Figure
 from bandbook.exhibits.paper import Paper, in_use, renamed, saved
+from bandbook.exhibits.slim import slimmed
 
 #: Role → (sentinel colour while drawing, custom property, light value).
 COLOURS: Final = {
@@ -144,12 +145,14 @@ def finished(svg: str, prefix: str, alt: str) -> str:
         prefix: Put before every id, with a digest of the content.
         alt: What the figure shows.
     """
-    svg = re.sub(r"<metadata>.*?</metadata>\s*", "", svg[svg.index("<svg") :], flags=re.DOTALL)
+    svg = slimmed(re.sub(r"<metadata>.*?</metadata>\s*", "", svg[svg.index("<svg") :], flags=re.DOTALL))
     numbers: dict[str, int] = {}  # names that matplotlib makes from unrounded coordinates would show their last bits
     svg = _ID.sub(lambda use: f"{use[1]}{_OWN}{numbers.setdefault(use[2], len(numbers) + 1)}", svg)
     svg = _TAG.sub(lambda tag: _in_house(tag[0]), svg)
-    digest = hashlib.sha256(svg.encode()).hexdigest()[:8]  # pictures of several cases may stand on one page
-    svg = svg.replace(_OWN, f"{prefix}-{digest}-")
+    digest = hashlib.sha256(f"{prefix} {svg}".encode()).hexdigest()[
+        :8
+    ]  # pictures of several cases may stand on one page
+    svg = svg.replace(_OWN, f"f{digest}-")
     box = re.search(r'viewBox="[^"]+"', svg)
     head = f'<svg xmlns="http://www.w3.org/2000/svg" xmlns:xlink="http://www.w3.org/1999/xlink" {box[0] if box else ""}'
     label = f' role="img" aria-label="{html.escape(alt)}" data-figure="{html.escape(prefix)}">'

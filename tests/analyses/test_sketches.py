@@ -39,8 +39,17 @@ def texts(picture: Figure) -> list[str]:
 
 def marks(picture: Figure, colour: str) -> int:
     """Return how many marks of one face colour are drawn, that of the key among them where it has a name."""
+    return sum(f"fill: var(--bb-{colour}," in look for look in looks(picture))
+
+
+def looks(picture: Figure) -> list[str]:
+    """Return the style of each mark, that of its group where it has none of its own."""
     root = ET.fromstring(picture.svg)  # noqa: S314 - our own figure
-    return sum(f"--bb-{colour}," in use.get("style", "") for use in root.iter(f"{SVG}use"))
+    found = [
+        use.get("style", group.get("style", "")) for group in root.iter(f"{SVG}g") for use in group.findall(f"{SVG}use")
+    ]
+    assert len(found) == len(list(root.iter(f"{SVG}use")))
+    return found
 
 
 @pytest.mark.parametrize("model", EVERY)
@@ -162,10 +171,8 @@ def test_lobes_have_the_signs_of_the_closed_form(ask: Ask) -> None:
     )
     signs *= np.array([row[np.argmax(np.abs(row) > 0)] for row in signs])[:, None]
     n_negative = int(np.sum(signs < 0))
-    root = ET.fromstring(picture.svg)  # noqa: S314 - our own figure
-    circles = sum("--bb-series-1," in use.get("style", "").partition("stroke")[0] for use in root.iter(f"{SVG}use"))
-    assert circles == int(np.sum(signs > 0)) + 1, "one more in the key"
-    hatched = sum("--bb-series-2" in use.get("style", "") for use in root.iter(f"{SVG}use"))
+    assert marks(picture, "series-1") == int(np.sum(signs > 0)) + 1, "one more in the key"
+    hatched = sum("stroke: var(--bb-series-2," in look for look in looks(picture))
     assert hatched == 2 * n_negative + 1, "a ring and its hatching, one more in the key"
     assert "standing wave sin(kx)" in picture.caption
     assert [text.split(":")[0] for text in texts(picture) if "k =" in text] == ["1", "2", "3", "4", "5"]
