@@ -16,6 +16,8 @@ GREEK = {"Gamma": "Γ"}
 SAME_POINT = 1e-6
 #: Steps of the path within which an edge counts as lying on it.
 STEPS_OFF = 1.0
+#: Bands above which every second point of the path is drawn.
+MANY = 6
 #: Part of the vertical scale that a label beside a rule may reach.
 NEAR = 0.2
 
@@ -29,7 +31,8 @@ def draw(asked: Asked, result: Bands) -> tuple[Figure, ...]:
 
     def strokes(axes: Any) -> None:
         energies = drawable(result.energies)
-        axes.plot(result.path.distance, energies, color=pen.SERIES[0], linewidth=1.2)
+        shown = _shown(result)
+        axes.plot(result.path.distance[shown], energies[shown], color=pen.SERIES[0], linewidth=1.2)
         _k_axis(axes, asked, result)
         if result.gap and result.valence and result.conduction:
             axes.axhspan(result.valence.energy, result.conduction.energy, color=pen.LINE, alpha=0.35, linewidth=0)
@@ -46,7 +49,16 @@ def draw(asked: Asked, result: Bands) -> tuple[Figure, ...]:
         pen.energy_axis(axes, beta=asked.model.beta_unit, alpha=asked.model.alpha_unit)
 
     text = (f"Bands along {route}: {words}.", f"E(k) along {route}: {words}.{signs}")
-    return (pen.drawn("bands", strokes, words=text, study=asked.name, height=4.2),)
+    return (pen.drawn("bands", strokes, words=text, study=asked.name, height=3.5),)
+
+
+def _shown(result: Bands) -> NDArray[np.intp]:
+    """Return the points of the path that are drawn: of many bands every second, ends and named points always."""
+    n_points, n_bands = result.energies.shape
+    every = 2 if n_bands > MANY else 1
+    named = [int(np.argmin(np.abs(result.path.distance - place))) for place in result.path.distance[[0, -1]]]
+    kinks = np.flatnonzero(np.abs(np.diff(result.path.k, n=2, axis=0)).sum(axis=1) > 1e-9) + 1
+    return np.unique(np.concatenate([np.arange(0, n_points, every), kinks, named])).astype(np.intp)
 
 
 def _near(distance: NDArray[np.float64], energies: NDArray[np.float64], level: float) -> list[tuple[float, float]]:

@@ -7,6 +7,7 @@ from typing import Any, Final, Protocol
 from bandbook.cases.book import Book
 from bandbook.cases.embed import embedded
 from bandbook.cases.fences import Block
+from bandbook.cases.measured import with_series
 from bandbook.cases.read import ID, Case
 from bandbook.cases.references import Promised, QuantityPattern, Reference, read_references
 from bandbook.cases.resolve import ParameterUse, resolve
@@ -217,6 +218,8 @@ def _check_study(desk: _Desk, block: Block) -> None:
     checked = None
     if not block.is_broken:
         table, failed = desk.resolved(block)
+        table, wrong = with_series(table, desk.book.content)
+        desk.note(block, *wrong)
         checked = desk.kept(block, desk.vocabulary.check_study(table, desk.systems), failed)
         _check_order(desk, block, checked)
     desk.studies.setdefault(name, checked)

@@ -15,14 +15,15 @@ def embedded(paths: tuple[str, ...], book: Book) -> tuple[dict[str, str], list[P
     files: dict[str, str] = {}
     problems: list[Problem] = []
     for row, path in enumerate(paths):
-        text, wrong = _text_of(path, book.content)
+        text, wrong = text_of_book(path, book.content)
         problems += [problem.below("uses", row) for problem in wrong]
         if text is not None:
             files[path] = text
     return files, problems
 
 
-def _text_of(path: str, content: Path) -> tuple[str | None, list[Problem]]:
+def text_of_book(path: str, content: Path) -> tuple[str | None, list[Problem]]:
+    """Return the text of a file below the content folder, and what is wrong with its path or its bytes."""
     if not _is_inside(path, content):
         return None, [Problem(f'the path "{shortened(path)}" leads out of the book', _ALLOWED, "correct the path")]
     if str(PurePosixPath(path)) != path or ".." in PurePosixPath(path).parts:

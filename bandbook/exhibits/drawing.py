@@ -68,7 +68,7 @@ WIDTH: Final = 5.2
 SMALL: Final = 9.0
 #: Inches of a sign in the key with the space around it, and of a letter of the smaller words.
 _HANDLE: Final = 0.52
-_LETTER: Final = 0.076
+_LETTER: Final = 0.07
 _TAG: Final = re.compile(r"<[^>]*>")
 _NUMBER: Final = re.compile(r"-?\d+\.\d{3,}")
 _ID: Final = re.compile(r'(\bid="|href="#|url\(#)([^")]+)')

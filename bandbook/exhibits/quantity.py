@@ -49,6 +49,10 @@ KINDS: Final[Mapping[str, Kind]] = {
 }
 
 
+#: What may stand for a placeholder in the name of a quantity; anything for the others.
+_PLACEHOLDERS: Final = {"<n>": r"[1-9][0-9]*", "<N>": r"[1-9][0-9]*", "<fit>": r"[a-z-]+(?:_(?:4m|4m\+2|odd))?"}
+
+
 @dataclass(frozen=True)
 class QuantityName:
     """A quantity that a question promises; ``<n>``, ``<N>`` stand for a whole number from 1, other ``<…>`` for a name.
@@ -70,10 +74,7 @@ class QuantityName:
         True
         """
         parts = re.split(r"(<\w+>)", self.pattern)
-        text = "".join(
-            (r"[1-9][0-9]*" if part in {"<n>", "<N>"} else r".+") if part.startswith("<") else re.escape(part)
-            for part in parts
-        )
+        text = "".join(_PLACEHOLDERS.get(part, r".+") if part.startswith("<") else re.escape(part) for part in parts)
         return re.fullmatch(text, name) is not None
 
 

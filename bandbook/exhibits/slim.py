@@ -15,12 +15,12 @@ _STYLE: Final = re.compile(r' style="([^"]*)"')
 
 
 def slimmed(svg: str) -> str:
-    r"""Return the same picture in fewer bytes.
+    """Return the same picture in fewer bytes.
 
     Args:
         svg: As matplotlib saves it.
 
-    >>> slimmed('<svg><g id="a"><path id="m" d="M 0 0 \\nL 1 1 \\n"/><g id="b"/></g><use xlink:href="#m"/></svg>')
+    >>> slimmed('<svg><g id="a"><path id="m" d="M 0 0 L 1 1 "/><g id="b"/></g><use xlink:href="#m"/></svg>')
     '<svg><g><path id="m" d="M0 0L1 1"/></g><use xlink:href="#m"/></svg>'
     """
     referred = set(_REFERRED.findall(svg))

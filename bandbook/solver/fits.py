@@ -66,10 +66,11 @@ class Fit:
     def curve(self, n_cells: Real, *, oscillators: int = 1) -> Real:
         """Return the fitted gap at some lengths, eV."""
         values = np.array([self.parameters[name] for name in FORMS[self.form].parameters])
-        return FORMS[self.form].curve(_lengths(self.form, n_cells, oscillators), values)
+        return FORMS[self.form].curve(form_lengths(self.form, n_cells, oscillators), values)
 
 
-def _lengths(form: str, n_cells: Real, oscillators: int) -> Real:
+def form_lengths(form: str, n_cells: Real, oscillators: int) -> Real:
+    """Return the lengths as a form counts them: oscillators for the Kuhn form, otherwise cells."""
     numbers = np.asarray(n_cells, dtype=np.float64)
     return numbers * oscillators if form == "kuhn" else numbers
 
@@ -142,7 +143,7 @@ def fit_series(form: str, n_cells: Real, gap: Real, *, oscillators: int = 1) -> 
     1.0
     """
     chosen = FORMS[form]
-    n = _lengths(form, n_cells, oscillators)
+    n = form_lengths(form, n_cells, oscillators)
     if len(n) <= len(chosen.parameters):
         reason = f"{len(n)} lengths, and the form has {len(chosen.parameters)} parameters"
         return Fit(form, None, {}, None, None, reason=reason)

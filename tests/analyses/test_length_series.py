@@ -149,3 +149,57 @@ def test_a_change_must_fit_the_shortest_piece(inspect: Callable[..., list[Proble
     assert inspect(CHAIN, "length_series", cells="3..6", changes=change) == []
     (problem,) = inspect(CHAIN, "length_series", cells="1..6", changes=change)
     assert problem.key == ("changes", 0, "cell")
+
+
+def test_rings_fall_into_families(ask: Ask, column: Column) -> None:
+    """Rings of N atoms: 4|β| sin(π/N) for 4m + 2 electrons, open shell for 4m; alternating bonds close that: 1.4 eV."""
+    answer = ask(CHAIN, "length_series", cells=list(range(3, 23)), ends="ring", fits=["inverse"])
+    for n in (6, 10, 14, 18, 22):
+        assert answer.value(f"gap_{n}") == pytest.approx(10.0 * math.sin(math.pi / n), abs=1e-8)
+    assert [answer.value(f"gap_{n}") for n in (4, 8, 12)] == [0.0, 0.0, 0.0]
+    assert answer.value("limit_inverse") is not None, "one family has closed shells, so its limit needs no name"
+    answer = ask(
+        ALTERNATING, "length_series", cells=list(range(2, 22)), ends="ring", fits=["inverse", "inverse-square"]
+    )
+    for n in (4, 8, 20):
+        assert answer.value(f"gap_{n}") == pytest.approx(1.4, abs=1e-8)
+    assert answer.value("limit_inverse_4m") == pytest.approx(1.4, abs=1e-5)
+    assert answer.value("limit_inverse-square_4m+2") == pytest.approx(1.4, abs=0.4)
+    assert set(column(answer, "fits", "family")) == {"4m", "4m+2"}
+
+
+def test_a_measured_series_stands_beside_the_computed_one(ask: Ask, column: Column, texts: Texts) -> None:
+    lengths = [2, 3, 4, 5, 6, 8]
+    measured = {
+        "label": "onsets (invented)",
+        "lengths": lengths[::-1], "gaps": [1.5 + 3.0 / n for n in lengths[::-1]], "errors": [0.05] * 6,
+    }  # fmt: skip
+    answer = ask(ALTERNATING, "length_series", cells=list(range(1, 11)), fits=["inverse"], measured=measured)
+    assert answer.value("measured_limit_inverse") == pytest.approx(1.5, abs=1e-5)
+    design = np.array([[1, 1 / n] for n in lengths]) / 0.05
+    assert answer.value("measured_limit_inverse_error") == pytest.approx(
+        math.sqrt(np.linalg.inv(design.T @ design)[0, 0]), abs=1e-5
+    )
+    assert column(answer, "measured", "cells") == lengths
+    gap = [answer.value(f"gap_{n}") or 0.0 for n in lengths]
+    assert column(answer, "measured", "difference") == pytest.approx(
+        [1.5 + 3.0 / n - one for n, one in zip(lengths, gap, strict=True)], abs=2e-6
+    )
+    assert "onsets (invented)" in texts(answer, "series")
+    assert "measured series" in texts(answer, "limits")
+    assert any("no one-electron gap" in warning for warning in answer.warnings)
+
+
+def test_levels_of_several_lengths_stand_on_one_band(ask: Ask, texts: Texts) -> None:
+    answer = ask(CHAIN, "length_series", cells=list(range(1, 21)))
+    picture = next(figure for figure in answer.figures if figure.name == "on-band")
+    assert (
+        "N = 2: 2 on the bands, N = 4: 4 on the bands, N = 6: 6 on the bands, N = 10: 10 on the bands"
+        in picture.caption
+    )
+    assert [text for text in texts(answer, "on-band") if text.startswith("N =")] == [
+        "N = 2",
+        "N = 4",
+        "N = 6",
+        "N = 10",
+    ]

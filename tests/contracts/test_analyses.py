@@ -36,7 +36,7 @@ CELLS: dict[str, Any] = {"gapped honeycomb": [2, 2]}
 #: A number of each question that its captions must tell.
 TOLD = {"levels": "gap", "bands": "total_width", "length_series": "band_gap"}
 #: Numbers without a unit.
-PLAIN = {"x", "occupation", "w"}
+PLAIN = {"occupation", "w", "x", "factor", "chi2", "aicc", "weight"}
 #: Columns that stay even where no row has an answer.
 MAY_BE_BLANK = {"mass", "extended_gap", "window_error", "conjugation_length"}
 
@@ -48,6 +48,8 @@ def asked_of(analysis: Analysis, name: str) -> Asked | None:
         given["cells"] = "1..6" if analysis.question == "length_series" else CELLS.get(name, 4)
         if MODELS[name].dimension == 0:
             del given["cells"]
+    if any(field.name == "measured" for field in analysis.fields):
+        given["measured"] = {"lengths": [1, 2, 3, 4, 5, 6], "gaps": [5.0, 4.0, 3.5, 3.2, 3.1, 3.0]}
     study, problems = check(analysis.fields, given)
     if problems or analysis.inspect(study, MODELS[name]):
         return None

@@ -13,7 +13,11 @@ from bandbook.exhibits import KINDS, answer_bundle
 STUDIES: dict[str, dict[str, Any]] = {
     "levels": {"question": "levels", "cells": 4},
     "bands": {"question": "bands"},
-    "length_series": {"question": "length_series", "cells": "1..8"},
+    "length_series": {
+        "question": "length_series",
+        "cells": "1..8",
+        "measured": {"lengths": [1, 2, 3, 4, 5], "gaps": [5, 4, 3, 3, 2.5]},
+    },
 }
 
 
