@@ -159,6 +159,10 @@ def test_every_source_is_used_and_shown(book: Path, records: Records) -> None:
     sets = "".join(path.read_text(encoding="utf-8") for path in (ROOT / "content/parameters").glob("*.toml"))
     used = {row["source"] for record in records.values() for row in record["references"]}
     used |= set(re.findall(r'source = "(\w+)"', sets))
+    code = "".join(path.read_text(encoding="utf-8") for path in (ROOT / "bandbook").rglob("*.py"))
+    used |= {
+        key for line in re.findall(r"^ *Source: (.+)\.$", code, flags=re.MULTILINE) for key in re.findall(r"\w+", line)
+    }
     assert keys - used == set()
     page = (book / "site/sources/index.html").read_text(encoding="utf-8")
     assert [key for key in keys if f'id="{key}"' not in page] == []

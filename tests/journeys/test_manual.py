@@ -107,7 +107,7 @@ def test_what_is_said_of_running_is_seen(reader: Reader) -> None:
     assert not (reader.book / "levels.png").exists()
 
 
-@pytest.mark.parametrize(("page", "cases"), [("writing-a-case.md", 6), ("book.md", 1)])
+@pytest.mark.parametrize(("page", "cases"), [("writing-a-case.md", 7), ("book.md", 1)])
 def test_every_example_runs_and_agrees(page: str, cases: int, reader: Reader) -> None:
     bandbook("start", "my-book", folder=reader.folder)
     assert reader.follow(page).count("markdown") == cases
