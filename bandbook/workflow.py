@@ -96,6 +96,7 @@ class _Vocabulary:
     check_system = staticmethod(registry.check_system)
     check_study = staticmethod(registry.check_study)
     quantity_names = staticmethod(registry.quantity_names)
+    formula_mistakes = staticmethod(pages.formula_mistakes)
 
 
 def check(settings: Settings, wanted: Sequence[str] = ()) -> Checked:

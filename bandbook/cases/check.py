@@ -6,7 +6,7 @@ from typing import Any, Final, Protocol
 
 from bandbook.cases.book import Book
 from bandbook.cases.embed import embedded
-from bandbook.cases.fences import Block
+from bandbook.cases.fences import Block, Prose
 from bandbook.cases.measured import with_series
 from bandbook.cases.read import ID, Case
 from bandbook.cases.references import Promised, QuantityPattern, Reference, read_references
@@ -32,6 +32,10 @@ class Vocabulary(Protocol):
         self, given: Mapping[str, Any], systems: Mapping[str, Checked | None]
     ) -> tuple[Checked | None, list[Problem]]:
         """Check a study block against the systems of its case."""
+        ...
+
+    def formula_mistakes(self, text: str) -> list[tuple[int, str]]:
+        """Return the formulas of a text that cannot be set: line in the text, from 1, and what was found."""
         ...
 
     def quantity_names(self, question: str) -> Collection[QuantityPattern]:
@@ -115,6 +119,7 @@ def check_case(case: Case, book: Book, vocabulary: Vocabulary) -> CheckedCase:
     references = _check_references(desk, "reference")
     recorded = _check_references(desk, "recorded")
     files = _check_front(desk)
+    _check_prose(desk)
     _check_presence(desk)
     problems = {(p.line, str(p)): p.at(case.file, p.line or 1) for p in (*case.problems, *desk.problems)}
     ordered = tuple(problems[key] for key in sorted(problems))
@@ -131,6 +136,16 @@ def _parameters(desk: _Desk, files: dict[str, str]) -> Checked:
         "steps": desk.steps,
         "files": files,
     }
+
+
+def _check_prose(desk: _Desk) -> None:
+    """Note the formulas that cannot be set."""
+    for part in desk.case.parts:
+        if isinstance(part, Prose):
+            for line, found in desk.vocabulary.formula_mistakes(part.text):
+                remedy = "correct it, or write \\$ for a dollar sign"
+                problem = Problem(found, "a formula between dollar signs, in LaTeX", remedy)
+                desk.problems.append(problem.at(desk.case.file, part.line + line - 1))
 
 
 def _check_presence(desk: _Desk) -> None:

@@ -218,7 +218,7 @@ def rule(axes: Any, energy: float, text: str, *, style: str = ":", clear_of: Seq
         clear_of: Points that the label keeps away from.
     """
     axes.axhline(energy, color=QUIET, linestyle=style, linewidth=1.0, zorder=0)
-    x, side = _clearest(axes, energy, reach=0.0075 * len(text), points=clear_of)
+    x, side = _clearest(axes, energy, reach=0.0098 * len(text), points=clear_of)
     axes.annotate(
         text, (x, energy), xycoords=("axes fraction", "data"), xytext=(0, 3 * side), textcoords="offset points",
         ha="center", va="bottom" if side > 0 else "top", fontsize=SMALL, color=QUIET,

@@ -48,7 +48,7 @@ class Table:
     caption: str
     columns: tuple[Column, ...]
     rows: tuple[tuple[Cell, ...], ...]
-    most_shown: int = 40
+    most_shown: int = 14
 
     def __post_init__(self) -> None:
         rows = tuple(

@@ -4,8 +4,9 @@ The folder's rule: a page is made from a view and templates, knows nothing of th
 site, and escapes everything that an author wrote outside prose.
 """
 
+from bandbook.pages.mathml import mistakes as formula_mistakes
 from bandbook.pages.page import BookView, CaseView
 from bandbook.pages.templates import package_templates
 from bandbook.pages.tree import write_tree
 
-__all__ = ["BookView", "CaseView", "package_templates", "write_tree"]
+__all__ = ["BookView", "CaseView", "formula_mistakes", "package_templates", "write_tree"]

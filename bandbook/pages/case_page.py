@@ -7,6 +7,7 @@ from typing import Any
 
 from bandbook.cases import Block, Prose
 from bandbook.pages.links import adjusted
+from bandbook.pages.mathml import with_mathml
 from bandbook.pages.page import CaseView
 from bandbook.pages.sections import AFTER_BLOCK, BLOCKS, BOTTOM, BROKEN, TOP
 from bandbook.pages.templates import render
@@ -49,7 +50,7 @@ def _escaped(sign: str) -> str:
 
 def _prose(view: CaseView, part: Prose, ids: Collection[str]) -> str:
     source, page = f"cases/{view.id}.md", f"cases/{view.id}/index.md"
-    return adjusted(part.text.strip("\n"), source=source, page=page, ids=ids)
+    return with_mathml(adjusted(part.text.strip("\n"), source=source, page=page, ids=ids))
 
 
 def _block(view: CaseView, block: Block, override: Any) -> str:

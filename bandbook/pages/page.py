@@ -1,12 +1,17 @@
 """What pages are made from: a book and, for each case, what became of it."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from pathlib import Path
+from typing import Final
 
 from bandbook.cases import Book, CheckedCase
 from bandbook.errors import Problem
 from bandbook.records import Record
 from bandbook.store import Failure, Result
+
+#: Sketches of the first screen; those of further systems stand at their blocks.
+MOST_SKETCHES: Final = 2
 
 
 @dataclass(frozen=True)
@@ -21,6 +26,7 @@ class CaseView:
         failure: Why it has none.
         problems: Every mistake, placed.
         related: Id and title of each case that its author points to and that has a page.
+        sources: Set and name of a value of a parameter set → key of its source.
     """
 
     checked: CheckedCase
@@ -30,6 +36,7 @@ class CaseView:
     failure: Failure | None = None
     problems: tuple[Problem, ...] = ()
     related: tuple[tuple[str, str], ...] = ()
+    sources: Mapping[tuple[str, str], str] = field(default_factory=dict)
 
     @property
     def id(self) -> str:
@@ -79,5 +86,8 @@ class BookView:
         def related(case: CaseView) -> tuple[tuple[str, str], ...]:
             return tuple((name, shown[name]) for name in case.checked.case.front.see if name in shown)
 
-        cases = (replace(case, related=related(case)) for case in self.cases if case.id in shown)
+        sources = {
+            (name, value): row.source for name, one in self.book.sets.items() for value, row in one.values.items()
+        }
+        cases = (replace(case, related=related(case), sources=sources) for case in self.cases if case.id in shown)
         return replace(self, cases=tuple(cases))

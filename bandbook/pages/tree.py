@@ -8,8 +8,9 @@ from pathlib import Path
 
 from bandbook.pages.case_page import case_page, front_matter
 from bandbook.pages.links import adjusted
+from bandbook.pages.mathml import with_mathml
 from bandbook.pages.page import BookView, CaseView
-from bandbook.pages.tables import catalogue, set_pages, sources_page
+from bandbook.pages.tables import catalogue, front, quantities_csv, set_pages, sources_page
 from bandbook.pages.templates import package_templates
 
 #: Folders of the content whose files become pages of another kind, or none.
@@ -28,6 +29,7 @@ def write_tree(view: BookView, folder: Path) -> Path:
     files: dict[str, bytes] = {}
     ids = [case.id for case in view.cases]
     files |= _content(view.book.content, ids)
+    files["index.md"] = files["index.md"].rstrip() + f"\n\n{front(view)}\n".encode()
     files |= _assets(view)
     pages = {**catalogue(view), **set_pages(view), **sources_page(view), **_reading(view)}
     files |= {path: text.encode() for path, text in pages.items()}
@@ -46,7 +48,7 @@ def _content(content: Path, ids: list[str]) -> dict[str, bytes]:
             continue
         if name.endswith(".md") and name.split("/")[0] not in APART:
             text = path.read_text(encoding="utf-8-sig", errors="replace")
-            files[name] = adjusted(text, source=name, page=name, ids=ids).encode()
+            files[name] = with_mathml(adjusted(text, source=name, page=name, ids=ids)).encode()
         elif not name.endswith((".md", ".toml", ".bib")) and name.split("/")[0] not in APART[1:]:
             files[name] = path.read_bytes()
     return files
@@ -79,6 +81,7 @@ def _case(case: CaseView, ids: list[str], view: BookView) -> dict[str, bytes]:
         return files
     record = json.dumps(case.record.as_dict(), indent=1, ensure_ascii=False) + "\n"
     files[f"{place}/record.json"] = record.encode()
+    files[f"{place}/quantities.csv"] = quantities_csv(case.record).encode()
     for name in case.result.files:
         files[f"{place}/{name}"] = (case.result.folder / name).read_bytes()
     return files

@@ -59,6 +59,9 @@ class Small:
             problems.append(one_of(str(name), list(systems), "system").below("system"))
         return (None if problems else {**checked, "system": name}), problems
 
+    def formula_mistakes(self, text: str) -> list[tuple[int, str]]:
+        return [(1, "a formula")] if "$x$" in text else []
+
     def quantity_names(self, question: str) -> Collection[Quantity]:
         return {"gap": (Quantity("gap"), Quantity("energy_<n>")), "width": (Quantity("width"),)}.get(question, ())
 

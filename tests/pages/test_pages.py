@@ -67,9 +67,9 @@ def test_only_what_changed_is_written_and_what_is_gone_goes(make_book: MakeBook,
         for path, time in before.items()
         if path.exists() and path.stat().st_mtime_ns != time
     }
-    # The first page of `a` said "executed", and the list of the set's users named `b`.
+    # The first page of `a` said "executed", the list of the set's users named `b`, the front page counted it.
     assert changed == {
-        "catalogue/index.md", "catalogue/catalogue.csv", "catalogue/catalogue.json", "parameters/set/index.md", "cases/a/index.md",
+        "index.md", "catalogue/index.md", "catalogue/catalogue.csv", "catalogue/catalogue.json", "parameters/set/index.md", "cases/a/index.md",
     }  # fmt: skip
 
 
@@ -103,8 +103,11 @@ def test_cases_that_belong_together_are_named(make_book: MakeBook, case_text: st
 def test_a_study_says_what_was_asked_and_what_it_rests_on(make_book: MakeBook, case_text: str) -> None:
     _, tree = write(make_book({"a": case_text}))
     asked = page_of(tree).partition('<p class="bb-asked">')[2].partition("</p>")[0]
-    rests = 'rests on <a href="../../parameters/set/index.html">set</a>'
-    assert asked == f"<strong>levels</strong> · cells 4 · {rests}"
+    rests = 'parameters: <a href="../../parameters/set/index.html#beta">set.beta</a>'
+    assert asked == "<strong>levels</strong> · cells 4"
+    trail = page_of(tree).partition('<p class="bb-trail">')[2].partition("</p>")[0]
+    assert rests in trail
+    assert '<a href="quantities.csv" download>' in trail
     values = page_of(tree).partition("<caption>Reference values</caption>")[2]
     assert "<td data-number>0.618034</td> <td data-number>10⁻⁶</td> <td data-number>0.618034</td>" in values
     assert "✓ agrees" in values
@@ -119,7 +122,7 @@ def test_sites_and_couplings_are_a_table_with_their_parameters(make_book: MakeBo
     finished, tree = write(make_book({"a": text[: text.index("```toml reference")]}))
     assert finished.messages == ()
     assert '<th scope="col" data-number>alpha <small>eV</small></th>' in page_of(tree)
-    assert '<a href="../../parameters/set/index.html" title="set.beta">−2.5</a>' in page_of(tree)
+    assert '<a href="../../parameters/set/index.html#beta" title="set.beta">−2.5</a>' in page_of(tree)
     assert "<td data-number>−1.5</td>" in page_of(tree)
 
 
@@ -182,7 +185,7 @@ def test_the_catalogue_as_csv_and_json(make_book: MakeBook, case_text: str) -> N
     rows = list(csv.reader((tree / "catalogue/catalogue.csv").read_text(encoding="utf-8").splitlines()))
     assert rows[1] == ["a", "A, chain", "active", "done", "1 reference value agrees", "levels.homo", "-1.5", "eV"]
     (row,) = json.loads((tree / "catalogue/catalogue.json").read_text(encoding="utf-8"))
-    assert (row["case"], row["system"], row["quantities"][0]["value"]) == ("a", "chain", -1.5)
+    assert (row["case"], row["system"], row["quantities"][0]["value"]) == ("a", "chain, β −2.5 eV", -1.5)
 
 
 def test_a_set_tells_who_uses_each_value(make_book: MakeBook) -> None:

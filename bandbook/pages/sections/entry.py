@@ -2,7 +2,7 @@
 
 from typing import Any
 
-from bandbook.cases import Block
+from bandbook.cases import Block, ParameterUse
 from bandbook.pages.page import CaseView
 from bandbook.pages.sections.system import words
 
@@ -26,7 +26,8 @@ def facts(view: CaseView, block: Block) -> dict[str, Any] | None:
         "question": question,
         "asked": [f"{key} {words(value)}" for key, value in block.table.items() if key not in _SAID_APART],
         "system": str(block.table.get("system", "")),
-        "sets": _sets(view, block),
+        "parameters": _parameters(view, block),
+        "sources": _sources(view, block, study),
         "is_missing": record is None,
         "figures": [exhibit for exhibit in exhibits if exhibit["kind"] == "figure"],
         "tables": [_table(exhibit) for exhibit in exhibits if exhibit["kind"] == "table"],
@@ -36,11 +37,23 @@ def facts(view: CaseView, block: Block) -> dict[str, Any] | None:
     }
 
 
-def _sets(view: CaseView, block: Block) -> list[str]:
-    """Return the parameter sets that a study and its system rest on."""
+def _uses(view: CaseView, block: Block) -> list[ParameterUse]:
     system = block.table.get("system")
     blocks = {one.line for one in view.checked.case.of_kind("system") if system is None or one.name == system}
-    return sorted({use.set for use in view.checked.uses if use.block in {*blocks, block.line}})
+    return [use for use in view.checked.uses if use.block in {*blocks, block.line}]
+
+
+def _parameters(view: CaseView, block: Block) -> list[tuple[str, str]]:
+    """Return the values of parameter sets, set and name, that a study and its system rest on."""
+    return sorted({(use.set, use.name) for use in _uses(view, block)})
+
+
+def _sources(view: CaseView, block: Block, study: str) -> list[str]:
+    """Return the sources that a study's parameters and reference values name."""
+    keys = {view.sources.get((use.set, use.name), "") for use in _uses(view, block)}
+    references = view.record.references if view.record else ()
+    keys |= {row["source"] or "" for row in references if row["quantity"].startswith(f"{study}.")}
+    return sorted(keys - {""})
 
 
 def _strip(view: CaseView, study: str) -> list[dict[str, Any]]:

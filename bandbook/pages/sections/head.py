@@ -1,9 +1,10 @@
 """The first screen: what this is, what came out, whether it can be trusted, what it is built on."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
-from bandbook.pages.page import CaseView
+from bandbook.pages.described import called, described
+from bandbook.pages.page import MOST_SKETCHES, CaseView
 
 
 def facts(view: CaseView) -> dict[str, Any] | None:
@@ -12,7 +13,8 @@ def facts(view: CaseView) -> dict[str, Any] | None:
     return {
         "front": view.checked.case.front,
         "systems": described_systems(view),
-        "quantities": view.record.key_quantities if view.record else [],
+        "quantities": _named(view.record.key_quantities if view.record else []),
+        "sketches": sketches(view)[:MOST_SKETCHES],
         "sign": sign,
         "verdict": words,
         "n_warnings": len(view.record.warnings) if view.record else 0,
@@ -26,18 +28,14 @@ def facts(view: CaseView) -> dict[str, Any] | None:
 def described_systems(view: CaseView) -> list[str]:
     """Return each system of a case in one line."""
     systems = view.checked.parameters["systems"] if view.checked.parameters else {}
-    return [describe(name, system) for name, system in systems.items()]
+    return [described(name, system) for name, system in systems.items()]
 
 
-def describe(name: str, system: Mapping[str, Any]) -> str:
-    """Return a system in one line.
+def sketches(view: CaseView) -> list[Mapping[str, Any]]:
+    """Return the sketches of a case's systems."""
+    exhibits = view.record.exhibits if view.record else ()
+    return [exhibit for exhibit in exhibits if exhibit["study"] == "system" and exhibit["kind"] == "figure"]
 
-    >>> describe("short", {"form": "named-lattice", "lattice": "chain"})
-    'short: chain'
-    """
-    what = {
-        "named-lattice": lambda: str(system["lattice"]),
-        "written-out": lambda: f"{len(system['sites'])} sites written out",
-        "built-by": lambda: f"built by {system['built_by']}",
-    }[system["form"]]()
-    return what if name == "system" else f"{name}: {what}"
+
+def _named(quantities: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    return [{**quantity, "called": called(quantity["name"])} for quantity in quantities]

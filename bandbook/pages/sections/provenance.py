@@ -15,7 +15,13 @@ def facts(view: CaseView) -> dict[str, Any] | None:
         "inputs": record.inputs,
         "environment": record.environment,
         "key": record.key,
-        "files": ["record.json", "notebook.ipynb", *dict.fromkeys(exhibit["file"] for exhibit in record.exhibits)],
+        "case": view.id,
+        "files": [
+            "record.json",
+            "notebook.ipynb",
+            "quantities.csv",
+            *dict.fromkeys(exhibit["file"] for exhibit in record.exhibits),
+        ],
         "source": view.checked.case.file,
         "up": view.up,
     }

@@ -5,7 +5,7 @@ from typing import Any
 
 from bandbook.cases import Block, ParameterUse
 from bandbook.pages.numbers import as_written
-from bandbook.pages.page import CaseView
+from bandbook.pages.page import MOST_SKETCHES, CaseView
 
 #: Rows of a list of sites or couplings that a page shows; all of them stand in the notebook.
 MOST_ROWS = 40
@@ -20,8 +20,20 @@ def facts(view: CaseView, block: Block) -> dict[str, Any] | None:
         "name": block.name,
         "rows": [_row(key, value, uses.get(key)) for key, value in single.items()],
         "lists": [_list(key, value, uses) for key, value in block.table.items() if _is_list(value)],
+        "sketch": _sketch(view, block.name or "system"),
         "up": view.up,
     }
+
+
+def _sketch(view: CaseView, name: str) -> Mapping[str, Any] | None:
+    """Return the sketch of a system; nothing of those that stand in the first screen already."""
+    exhibits = view.record.exhibits if view.record else ()
+    found = [one for one in exhibits if one["study"] == "system" and one["kind"] == "figure"]
+    return next((one for one in found[MOST_SKETCHES:] if one["file"] == f"figures/{_file_of(name)}"), None)
+
+
+def _file_of(name: str) -> str:
+    return "system.svg" if name == "system" else f"system-{name}.svg"
 
 
 def unit_of(key: str) -> str:
