@@ -84,7 +84,7 @@ def test_pages_open_and_ask_no_other_host(site: Path, address: str, browser: Any
             wide = page.evaluate("document.documentElement.scrollWidth - document.documentElement.clientWidth")
             assert wide <= 1, f"{name}: {wide} px wider than a phone"
         page.goto(base + "cases/butadiene/index.html")
-        assert page.locator("svg[role=img]").count() == 5
+        assert page.locator("svg[role=img]").count() == 6
         assert page.locator("figure img").count() == 0
         assert page.evaluate(DOUBLE_IDS) == []
         page.close()
