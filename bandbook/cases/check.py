@@ -121,7 +121,7 @@ def check_case(case: Case, book: Book, vocabulary: Vocabulary) -> CheckedCase:
     files = _check_front(desk)
     _check_prose(desk)
     _check_presence(desk)
-    problems = {(p.line, str(p)): p.at(case.file, p.line or 1) for p in (*case.problems, *desk.problems)}
+    problems = {(p.line, str(p)): p.at(p.file or case.file, p.line or 1) for p in (*case.problems, *desk.problems)}
     ordered = tuple(problems[key] for key in sorted(problems))
     parameters = None if ordered else _parameters(desk, files)
     return CheckedCase(case, parameters, references, recorded, tuple(desk.uses), ordered, dict(desk.blocks))

@@ -60,5 +60,15 @@
     var search = document.querySelector(".md-search[role=dialog]");
     if (search) search.setAttribute("aria-label", "Search");
     Array.prototype.forEach.call(document.querySelectorAll("[data-bb-filter]"), catalogue);
+    // The theme wraps tables of prose in a region that scrolls; a keyboard must reach it.
+    function reach() {
+      Array.prototype.forEach.call(document.querySelectorAll(".md-typeset__scrollwrap:not([tabindex])"), function (one) {
+        one.setAttribute("tabindex", "0");
+        one.setAttribute("role", "region");
+        one.setAttribute("aria-label", "table");
+      });
+    }
+    reach();
+    new MutationObserver(reach).observe(document.body, { childList: true, subtree: true });
   });
 })();

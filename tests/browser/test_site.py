@@ -1,19 +1,13 @@
 """A built book in a browser: from disk and over http below a prefix, with no request to another host."""
 
-import functools
-import http.server
-import shutil
 import subprocess
 import sys
-import threading
-from collections.abc import Iterator
+from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
 import pytest
 
-CHROMIUM = shutil.which("chromium")
-FLAGS = ["--no-sandbox", "--disable-gpu", "--no-first-run", "--disable-background-networking", "--disable-sync"]
 DOUBLE_IDS = "[...document.querySelectorAll('[id]')].map(e => e.id).filter((id, n, all) => all.indexOf(id) !== n)"
 FIGURE_TEXT = "document.querySelector('figure svg text, figure svg g[id*=text] use, figure svg g[id*=text] path')"
 CONTRAST = """() => {
@@ -31,15 +25,7 @@ PAGES = [
     "cases/butadiene/index.html",
     "parameters/hydrocarbon/index.html",
 ]
-pytestmark = [
-    pytest.mark.journey,
-    pytest.mark.skipif(CHROMIUM is None, reason="not run: there is no chromium; CI installs it"),
-]
-
-
-class Quiet(http.server.SimpleHTTPRequestHandler):
-    def log_message(self, *_: object) -> None:
-        """Say nothing."""
+pytestmark = pytest.mark.journey
 
 
 @pytest.fixture(scope="module")
@@ -53,28 +39,14 @@ def site(tmp_path_factory: pytest.TempPathFactory) -> Path:
 
 
 @pytest.fixture(scope="module")
-def address(site: Path) -> Iterator[str]:
-    handler = functools.partial(Quiet, directory=str(site.parents[2]))
-    with http.server.ThreadingHTTPServer(("127.0.0.1", 0), handler) as server:
-        threading.Thread(target=server.serve_forever, daemon=True).start()
-        yield f"http://127.0.0.1:{server.server_port}/below/a/prefix/"
-        server.shutdown()
+def address(site: Path, serve: Callable[[Path], str]) -> str:
+    return serve(site)
 
 
-@pytest.fixture(scope="module")
-def browser() -> Iterator[Any]:
-    from playwright.sync_api import sync_playwright
-
-    with sync_playwright() as play:
-        browser = play.chromium.launch(executable_path=CHROMIUM, args=FLAGS)
-        yield browser
-        browser.close()
-
-
-def test_pages_open_and_ask_no_other_host(site: Path, address: str, browser: Any) -> None:
+def test_pages_open_and_ask_no_other_host(site: Path, address: str, chromium: Any) -> None:
     found: list[str] = []
     for base in (address, site.as_uri() + "/"):
-        page = browser.new_page(viewport={"width": 360, "height": 900})
+        page = chromium.new_page(viewport={"width": 360, "height": 900})
         page.on("console", lambda message: found.extend([message.text] if message.type == "error" else []))
         page.on("pageerror", lambda error: found.append(str(error)))
         page.on("request", lambda request: found.extend([request.url] if _is_foreign(request.url) else []))
@@ -91,8 +63,8 @@ def test_pages_open_and_ask_no_other_host(site: Path, address: str, browser: Any
     assert found == []
 
 
-def test_figures_follow_light_and_dark(site: Path, browser: Any) -> None:
-    page = browser.new_page(color_scheme="dark")
+def test_figures_follow_light_and_dark(site: Path, chromium: Any) -> None:
+    page = chromium.new_page(color_scheme="dark")
     page.goto((site / "cases/butadiene/index.html").as_uri())
     colours = []
     for _ in range(2):
@@ -102,8 +74,8 @@ def test_figures_follow_light_and_dark(site: Path, browser: Any) -> None:
     assert len(set(colours)) == 2
 
 
-def test_search_finds_a_case_over_http_and_is_not_offered_from_disk(site: Path, address: str, browser: Any) -> None:
-    page = browser.new_page(viewport={"width": 1280, "height": 900})
+def test_search_finds_a_case_over_http_and_is_not_offered_from_disk(site: Path, address: str, chromium: Any) -> None:
+    page = chromium.new_page(viewport={"width": 1280, "height": 900})
     page.goto((site / "index.html").as_uri())
     assert not page.locator(".md-search").is_visible()
     page.goto(address + "index.html")
@@ -115,8 +87,8 @@ def test_search_finds_a_case_over_http_and_is_not_offered_from_disk(site: Path, 
     page.wait_for_url("**/cases/butadiene/index.html*")
 
 
-def test_the_downloads_of_a_case_are_there(address: str, browser: Any) -> None:
-    page = browser.new_page()
+def test_the_downloads_of_a_case_are_there(address: str, chromium: Any) -> None:
+    page = chromium.new_page()
     page.goto(address + "cases/butadiene/index.html")
     for link in page.locator("a[download]").all():
         assert page.request.get(link.evaluate("one => one.href")).ok, link.get_attribute("href")

@@ -5,7 +5,10 @@ from pathlib import Path
 
 import pytest
 
+from bandbook import workflow
 from bandbook.cases.measured import with_series
+from bandbook.settings import read_settings
+from bandbook.store import key_of
 
 MakeBook = Callable[..., Path]
 GOOD = "# invented\nN, onset ,u\n2,3.5,0.03\n\n3,2.9,0.02\n"
@@ -61,3 +64,33 @@ def test_all_mistakes_at_once(tmp_path: Path) -> None:
 def test_a_path_out_of_the_book_is_refused(tmp_path: Path) -> None:
     _, problems = with_series({"measured": {"file": "../x.csv"}}, tmp_path)
     assert "leads out of the book" in str(problems[0])
+
+
+def test_the_check_of_a_case_tells_the_file_and_line_of_the_series(make_book: MakeBook, case_text: str) -> None:
+    study = 'question = "length_series"\ncells = "1..4"\nfits = []\nmeasured = { file = "data/x.csv" }'
+    root = make_book(
+        {
+            "a": case_text.replace('question = "levels"\ncells = 4', study).replace(
+                "levels.homo", "length_series.band_gap"
+            )
+        }
+    )
+    (root / "content/data").mkdir()
+    (root / "content/data/x.csv").write_text("N,gap\n2,3,5\n", encoding="utf-8")
+    settings = read_settings(root / "mkdocs.yml", root)
+    (problem,) = workflow.check(settings).problems
+    assert str(problem).startswith("content/data/x.csv:2: 3 cells in a table of 2 columns")
+
+
+def test_editing_the_series_makes_its_case_stale(make_book: MakeBook, case_text: str) -> None:
+    study = 'question = "length_series"\ncells = "1..4"\nfits = []\nmeasured = { file = "data/x.csv" }'
+    text = case_text.replace('question = "levels"\ncells = 4', study).replace("levels.homo", "length_series.band_gap")
+    root = make_book({"a": text, "b": case_text})
+    (root / "content/data").mkdir()
+    keys = []
+    for value in ("3.5", "3.6"):
+        (root / "content/data/x.csv").write_text(f"N,gap\n2,{value}\n", encoding="utf-8")
+        checked = workflow.check(read_settings(root / "mkdocs.yml", root))
+        assert checked.problems == ()
+        keys.append([key_of(case.parameters or {}) for case in checked.cases])
+    assert [one == two for one, two in zip(*keys, strict=True)] == [False, True]

@@ -16,6 +16,8 @@ MOST_KINDS: Final = 4
 #: Inches that one bond length takes up at most, and the tallest sketch.
 BOND: Final = 0.55
 TALLEST: Final = 3.4
+#: Inches of a bond length from which there is room for names beside the sites.
+ROOM: Final = 0.36
 
 
 @dataclass(frozen=True)
@@ -130,9 +132,13 @@ def _freest(taken: Sequence[float]) -> float:
 
 def height_of(places: Real, *, room: float = 0.9) -> float:
     """Return the height of a figure in inches that shows some places to scale at the width of all figures."""
-    width, height = (float(np.ptp(places[:, axis])) for axis in (0, 1))
-    scale = min(BOND, (pen.WIDTH - 0.6) / max(width, 1e-9))
-    return min(TALLEST, max(0.9, height * scale + room))
+    return min(TALLEST, max(0.9, float(np.ptp(places[:, 1])) * scale_of(places) + room))
+
+
+def scale_of(places: Real) -> float:
+    """Return the inches that a bond length takes up where some places are shown."""
+    width, height = (max(float(np.ptp(places[:, axis])), 1e-9) for axis in (0, 1))
+    return min(BOND, (pen.WIDTH - 0.6) / width, (TALLEST - 0.9) / height)
 
 
 def frame(axes: Any, places: Real) -> None:

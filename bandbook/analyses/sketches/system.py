@@ -53,7 +53,7 @@ def sketch_system(name: str, model: Model) -> Figure | None:
         shapes = strokes.kinds(site.alpha for site in model.sites)
         _draw_sites(axes, places, alphas, shapes=shapes, is_home=is_home)
         _outline(axes, model, layout)
-        if model.n_sites <= MOST_NAMED:
+        if model.n_sites <= MOST_NAMED and strokes.scale_of(places) >= strokes.ROOM:
             home = places[is_home]
             inner = [(bond.start, bond.end) for bond in model.couplings if not any(bond.cell)]
             away = strokes.away_from(home, inner, _reached(model, layout))

@@ -22,6 +22,7 @@ def facts(view: CaseView, block: Block) -> dict[str, Any] | None:
         "figures": [exhibit for exhibit in exhibits if exhibit["kind"] == "figure"],
         "texts": [exhibit["text"] for exhibit in exhibits if exhibit["kind"] == "text"],
         "reported": _reported(view, block),
+        "up": view.up,
     }
 
 
