@@ -1,6 +1,7 @@
 """From a name to the member of its family, with near names for a wrong one; the one place that knows every family."""
 
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
 from typing import Any, Protocol, TypeVar
 
 from bandbook.analyses import ANALYSES, Analysis, Asked
@@ -9,8 +10,8 @@ from bandbook.errors import AuthorError, PhysicsError, Problem
 from bandbook.exhibits import Answer, QuantityName
 from bandbook.lattices import LATTICES
 from bandbook.model import Model
-from bandbook.parameters import NAME, Field, check, listed, near, one_of, shortened, shown
-from bandbook.systems import FORMS, Form
+from bandbook.parameters import NAME, Field, check, corrected, listed, near, nearest, one_of, shortened, shown
+from bandbook.systems import COMMON, FORMS, Form
 
 LATTICE_NAMES = tuple(lattice.name for lattice in LATTICES)
 FORM_NAMES = tuple(form.name for form in FORMS)
@@ -24,6 +25,7 @@ _STUDY = (
     Field("name", "name", "name of the study (default: the question)", default=None),
     Field("system", "name", "system that is asked", default=None),
 )
+_LATTICE_KEY = (Field("lattice", "text", "name of the lattice"),)
 
 
 class _Named(Protocol):
@@ -72,23 +74,66 @@ def check_system(given: Mapping[str, Any]) -> tuple[dict[str, Any] | None, list[
     Returns:
         The checked parameters with their ``form``, or ``None`` when something is wrong; and every problem.
 
-    >>> check_system({"lattice": "chian"})[1][0].remedy
+    >>> check_system({"lattice": "chian", "beta": -2.5})[1][0].remedy
     'did you mean "chain"?'
     """
     forms = _forms_of(given)
     if len(forms) != 1:
-        return None, [_form_problem(given, forms)]
+        return None, [_form_problem(given, forms), *_rest_of_system(given, forms)]
     form = forms[0]
-    fields = form.fields(given)
-    if form.key == "lattice" and given["lattice"] not in LATTICE_NAMES:
-        known = {field.name for field in fields}
-        given = {key: value for key, value in given.items() if key in known}
-    checked, problems = check(fields, given)
-    problems += form.inspect(checked)
+    table, wrong = _with_lattice(given) if form.key == "lattice" else (given, [])
+    fields = form.fields(table)
+    if wrong and table is given:  # nothing is known of the other keys
+        table = _only(fields, given)
+    checked, problems = check(fields, table)
+    problems += [*wrong, *_as_written(form.inspect(checked), corrected(fields, table)[1])]
     if problems:
-        return None, problems
+        return None, list(dict.fromkeys(problems))
     checked.pop("name", None)
     return {"form": form.name, **checked}, []
+
+
+def _with_lattice(given: Mapping[str, Any]) -> tuple[Mapping[str, Any], list[Problem]]:
+    """Return a block with the lattice that it means, and the problem of a misspelt name."""
+    name = given["lattice"]
+    if name in LATTICE_NAMES:
+        return given, []
+    if not isinstance(name, str) or not name.strip():
+        return given, check(_LATTICE_KEY, {"lattice": name})[1]
+    problem = one_of(name, LATTICE_NAMES, "lattice").below("lattice")
+    meant = nearest(name, LATTICE_NAMES)
+    return ({**given, "lattice": meant[0]} if meant else given), [problem]
+
+
+def _rest_of_system(given: Mapping[str, Any], forms: Sequence[Form]) -> list[Problem]:
+    """Return what else is wrong with a system of no one form: of a misspelt form everything, else the common keys."""
+    likely = None if forms else _misspelt(given, [form.key for form in FORMS])
+    if likely is None:
+        return check(COMMON, _only(COMMON, given))[1]
+    key = nearest(likely, [form.key for form in FORMS])[0]
+    table = {key if name == likely else name: value for name, value in given.items()}
+    return _as_written(check_system(table)[1], {key: likely})
+
+
+def _misspelt(given: Mapping[str, Any], known: Sequence[str]) -> str | None:
+    """Return the first key that is near a known one."""
+    return next((key for key in given if nearest(key, known)), None)
+
+
+def _only(fields: Sequence[Field], given: Mapping[str, Any]) -> dict[str, Any]:
+    """Return the keys of a table that fields have."""
+    known = {field.name for field in fields}
+    return {key: value for key, value in given.items() if key in known}
+
+
+def _as_written(problems: Sequence[Problem], written: Mapping[str, str]) -> list[Problem]:
+    """Return problems at the keys as they stand in the block, misspelt as they are."""
+    return [
+        replace(problem, key=(written.get(str(problem.key[0]), problem.key[0]), *problem.key[1:]))
+        if problem.key
+        else problem
+        for problem in problems
+    ]
 
 
 def _forms_of(given: Mapping[str, Any]) -> list[Form]:
@@ -116,7 +161,7 @@ def _form_problem(given: Mapping[str, Any], forms: Sequence[Form]) -> Problem:
         return Problem(found, f"one of {keys}", "keep one of them", (forms[-1].key,))
     if not given:
         return Problem("an empty system", f"one of {keys}", "add one of these keys")
-    likely = next((key for key in given if near(key, [form.key for form in FORMS])), None)
+    likely = _misspelt(given, [form.key for form in FORMS])
     if likely is not None:
         remedy = near(likely, [form.key for form in FORMS])
         return Problem(f'unknown key "{shortened(likely)}"', f"a system has one of {keys}", remedy, (likely,))
@@ -141,21 +186,39 @@ def check_study(
     Returns:
         The checked parameters with ``question`` and ``system``, or ``None``; and every problem.
     """
-    question = given.get("question")
-    system, found = _system_of(given, systems)
-    if not isinstance(question, str):
-        return None, [_question_problem(given), *found]
-    if question not in QUESTION_NAMES:
-        return None, [one_of(question, QUESTION_NAMES, "question").below("question"), *found]
-    analysis = analysis_of(question)
-    checked, problems = check((*_STUDY, *analysis.fields), given)
-    problems += found
+    system, unknown = _system_of(given, systems)
+    table, wrong = _with_question(given)
+    analysis = next((one for one in ANALYSES if one.question == table.get("question")), None)
+    if analysis is None:  # nothing is known of the other keys
+        return None, [*wrong, *check(_STUDY[1:], _only(_STUDY[1:], given))[1], *unknown]
+    fields = (*_STUDY, *analysis.fields)
+    problems = [*wrong, *check(fields, table)[1], *unknown]
+    plain, written = corrected(fields, table)
+    checked, unreadable = check(fields, plain)
     checked["system"] = system
-    if problems or system is None:
-        return None, problems
-    problems = list(analysis.inspect(checked, _model_of(systems[system])))
+    if not unreadable and system is not None:
+        problems += _as_written(analysis.inspect(checked, _model_of(systems[system])), written)
     checked.pop("name", None)
-    return (None if problems else checked), problems
+    return (None if problems or system is None else checked), problems
+
+
+def _with_question(given: Mapping[str, Any]) -> tuple[Mapping[str, Any], list[Problem]]:
+    """Return a block with the question that it means, and the problem of one that there is not."""
+    key = "question" if "question" in given else _misspelt(given, ["question"])
+    if key is None or not isinstance(given[key], str):
+        return {}, [_question_problem(given)]
+    name = given[key]
+    problems = [] if key == "question" else [_question_misspelt(key)]
+    meant = [name]
+    if name not in QUESTION_NAMES:
+        problems.append(one_of(name, QUESTION_NAMES, "question").below(key))
+        meant = nearest(name, QUESTION_NAMES)
+    rest = {name: value for name, value in given.items() if name != key}
+    return ({"question": meant[0], **rest} if meant else {}), problems
+
+
+def _question_misspelt(key: str) -> Problem:
+    return Problem(f'unknown key "{shortened(key)}"', "a study has a question", 'did you mean "question"?', (key,))
 
 
 def _question_problem(given: Mapping[str, Any]) -> Problem:

@@ -126,7 +126,7 @@ def _filled(read: ParameterSet, table: Mapping[str, Any]) -> tuple[ParameterSet,
     if not any(origin.values()) and not is_told:
         allowed = "the set names one, for every value that does not name its own"
         problems.append(Problem("neither source nor note", allowed, "add source or note above [values]"))
-    inner = {key: table[key] if checked[key] == {} else {} for key in ("values", "atoms")}
+    inner = {key: table.get(key, {}) if checked[key] == {} else {} for key in ("values", "atoms")}
     values, wrong = _values(read, inner["values"], origin)
     atoms, wrong_atoms = _atoms(inner["atoms"])
     bonds, wrong_bonds = _bonds(table.get("bond", []))

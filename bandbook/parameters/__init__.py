@@ -7,8 +7,8 @@ against it and returns the checked parameters, plain JSON, together with every :
 from bandbook.errors import Problem
 from bandbook.parameters.field import MOST_CELLS, REQUIRED, Field, describe
 from bandbook.parameters.from_set import FromSet
-from bandbook.parameters.reading import KINDS, check
-from bandbook.parameters.words import NAME, listed, near, one_of, plain_name, shortened, shown
+from bandbook.parameters.reading import KINDS, check, corrected
+from bandbook.parameters.words import NAME, listed, near, nearest, one_of, plain_name, shortened, shown
 
 __all__ = [
     "KINDS",
@@ -19,9 +19,11 @@ __all__ = [
     "FromSet",
     "Problem",
     "check",
+    "corrected",
     "describe",
     "listed",
     "near",
+    "nearest",
     "one_of",
     "plain_name",
     "shortened",

@@ -9,7 +9,7 @@ from typing import Any, Final
 from bandbook.errors import Problem
 from bandbook.parameters.field import MOST_CELLS, Field, bound, describe
 from bandbook.parameters.from_set import FromSet
-from bandbook.parameters.words import NAME, listed, near, plain_name, shortened, shown
+from bandbook.parameters.words import NAME, listed, near, nearest, plain_name, shortened, shown
 
 #: Whole numbers up to here are exact as floats and in JSON.
 MOST_WHOLE: Final = 2**53
@@ -30,26 +30,57 @@ def check(fields: Sequence[Field], given: Mapping[str, Any]) -> tuple[dict[str, 
     Returns:
         The checked parameters, every field present (a default where the key was missing, ``None`` where it was wrong),
         numbers as float, −0.0 as 0.0, lists as lists; and every problem, in the order of the table, missing keys last.
+        A misspelt key is one problem, and is read as the key it means.
 
     >>> check((Field("beta", "number", "resonance integral", unit="eV", nonzero=True),), {"beta": -2.5})
     ({'beta': -2.5}, [])
     """
     known = {field.name: field for field in fields}
+    meant = _meant(known, given)
     checked: dict[str, Any] = {}
     problems: list[Problem] = []
     for key, value in given.items():
         if key not in known:
             problems.append(_unknown(key, known))
-            continue
-        checked[key], found = KINDS[known[key].kind](known[key], value)
-        problems += [problem.below(key) for problem in found]
+        field = known.get(meant.get(key, key))
+        if field is not None:
+            checked[field.name], found = KINDS[field.kind](field, value)
+            problems += [problem.below(key) for problem in found]
     for field in fields:
-        if field.name not in given:
+        if field.name not in checked:
             default = list(field.default) if isinstance(field.default, tuple) else field.default
             checked[field.name] = None if field.is_required else default
             if field.is_required:
                 problems.append(_missing(field))
     return {field.name: checked[field.name] for field in fields}, problems
+
+
+def _meant(known: Mapping[str, Field], given: Mapping[str, Any]) -> dict[str, str]:
+    """Return the field that each misspelt key means: the nearest one that stands nowhere else in the table.
+
+    An optional field is meant only by a value that it allows.
+    """
+    meant: dict[str, str] = {}
+    for key, value in given.items():
+        name = next(iter(nearest(str(key), known)), None) if key not in known else None
+        if name is None or name in given or name in meant.values():
+            continue
+        field = known[name]
+        if field.is_required or not KINDS[field.kind](field, value)[1]:
+            meant[key] = name
+    return meant
+
+
+def corrected(fields: Sequence[Field], given: Mapping[str, Any]) -> tuple[dict[str, Any], dict[str, str]]:
+    """Return a table without its unknown keys, misspelt ones put right, and how those that were put right stood there.
+
+    >>> corrected((Field("beta", "number", "resonance integral"),), {"bata": -2.5, "colour": "red"})
+    ({'beta': -2.5}, {'beta': 'bata'})
+    """
+    known = {field.name: field for field in fields}
+    meant = _meant(known, given)
+    table = {meant.get(key, key): value for key, value in given.items() if meant.get(key, key) in known}
+    return table, {name: key for key, name in meant.items()}
 
 
 def _unknown(key: object, known: Mapping[str, Field]) -> Problem:

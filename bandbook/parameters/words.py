@@ -21,9 +21,18 @@ def near(word: str, known: Collection[str]) -> str:
     >>> near("bata", ["alpha", "beta"])
     'did you mean "beta"?'
     """
+    found = nearest(word, known)
+    return "did you mean " + " or ".join(f'"{name}"' for name in found) + "?" if found else ""
+
+
+def nearest(word: str, known: Collection[str]) -> list[str]:
+    """Return the up to three known words that are near a word, the nearest first.
+
+    >>> nearest("bata", ["alpha", "beta"]), nearest("x", ["alpha"])
+    (['beta'], [])
+    """
     lowered = {name.lower(): name for name in known}
-    found = difflib.get_close_matches(word.lower()[:80], list(lowered), n=3, cutoff=0.6)
-    return "did you mean " + " or ".join(f'"{lowered[name]}"' for name in found) + "?" if found else ""
+    return [lowered[name] for name in difflib.get_close_matches(word.lower()[:80], list(lowered), n=3, cutoff=0.6)]
 
 
 def one_of(word: str, known: Collection[str], what: str) -> Problem:

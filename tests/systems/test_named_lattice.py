@@ -34,9 +34,9 @@ def test_a_misspelt_ring_is_no_system_written_out(name: str) -> None:
     assert problem.remedy == 'did you mean "ring"?'
 
 
-def test_an_unknown_lattice_hides_no_mistake_of_the_common_keys() -> None:
+def test_an_unknown_lattice_hides_no_mistake_of_other_keys() -> None:
     given = {"lattice": "alternating chain", "beta_inside": True, "charge": 0.5, "electrons": -1}
-    assert keys(given) == [("charge",), ("electrons",), ("lattice",)]
+    assert keys(given) == [("beta_inside",), ("charge",), ("electrons",), (), ("lattice",)]
     assert 'did you mean "alternating-chain"' in registry.check_system(given)[1][-1].remedy
 
 
