@@ -11,6 +11,7 @@ from bandbook.cli import COMMANDS
 from bandbook.lattices import LATTICES, Lattice
 from bandbook.solver.parent import BAND_EDGE, FLAT_BAND, GAP_LEVEL, NO_PARENT, NOT_1D
 from bandbook.systems.form import COMMON
+from tests import reference_page
 
 CONTENT = Path(__file__).parents[2] / "content"
 #: Keys of the front matter that the manual leaves out.
@@ -102,3 +103,9 @@ def test_sources_named_in_docstrings_are_in_the_bibliography() -> None:
     }
     assert named
     assert named <= entries
+
+
+def test_the_reference_is_what_the_code_says() -> None:
+    assert reference_page.PAGE.read_text(encoding="utf-8") == reference_page.page(), (
+        "the code has changed: write the page anew with python -m tests.reference_page"
+    )

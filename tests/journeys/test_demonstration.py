@@ -80,6 +80,19 @@ SAID = (
     ("paraphenylene", "six 2.603 eV", "length_series.gap_6", 1),
     ("paraphenylene", "ends at 2.084 eV", "length_series.limit_inverse", 1),
     ("paraphenylene", "limit of 2.237 eV", "length_series.band_gap", 1),
+    ("carbonyl-ends", "−2.700 eV", "acrolein.homo", 1),
+    ("carbonyl-ends", "to 0.938 eV", "acrolein.lumo", 1),
+    ("carbonyl-ends", "3.638 eV", "length_series.gap_4", 1),
+    ("carbonyl-ends", "0.826 eV", "length_series.gap_20", 1),
+    ("wall-by-changes", "32 % of it", "workings.middle", 100),
+    ("gapped-sheet", "gap is 3.900 eV", "bands.gap", 1),
+    ("gapped-sheet", "0.594 electron", "bands.mass_electron", 1),
+    ("alternating-rings", "3.365 eV", "length_series.gap_5", 1),
+    ("alternating-rings", "1.621 eV", "length_series.gap_19", 1),
+    ("alternating-rings", "ends at 1.558 eV", "length_series.limit_inverse-square_4m+2", 1),
+    ("alternating-rings", "1/N at 1.039 eV", "length_series.limit_inverse_4m+2", 1),
+    ("measured-onsets", "1/N ends at 2.242 eV", "length_series.measured_limit_inverse", 1),
+    ("measured-onsets", "the exponential at 2.575 eV", "length_series.measured_limit_exponential", 1),
     ("paraphenylene", "at 2.252 eV", "length_series.limit_shifted-inverse-square", 1),
 )
 
@@ -108,7 +121,7 @@ def records(book: Path) -> Records:
 
 
 def test_the_book_has_what_a_reader_may_expect(records: Records) -> None:
-    assert len(CASES) >= 7
+    assert len(CASES) >= 14
     text = "\n".join(path.read_text(encoding="utf-8") for path in (ROOT / "content/cases").rglob("*.md"))
     lattices = ("chain", "alternating-chain", "diatomic-chain", "polyacene", "armchair-ribbon", "zigzag-ribbon")
     assert [name for name in (*lattices, "honeycomb", "ring") if f'lattice = "{name}"' not in text] == []
