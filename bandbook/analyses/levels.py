@@ -1,5 +1,6 @@
 """The question ``levels``: the levels of a molecule or a piece, and where they lie on the bands of its crystal."""
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
@@ -8,7 +9,7 @@ import numpy as np
 
 from bandbook.analyses.analysis import Analysis, Asked, counted
 from bandbook.analyses.levels_figures import draw
-from bandbook.analyses.piece_fields import CELLS, CUT, cut_of, inspect_piece
+from bandbook.analyses.piece_fields import CELLS, CUT, charge_warning, cut_of, inspect_piece
 from bandbook.exhibits import Column, Quantity, QuantityName, Table
 from bandbook.model import Model
 from bandbook.parameters import Problem
@@ -147,7 +148,7 @@ def _named(model: Model, piece: Piece, site: int) -> str:
 def warn(asked: Asked, result: LevelsResult) -> tuple[str, ...]:
     """Return what a reader could be misled by."""
     levels, places, piece = result.levels, result.places, result.piece
-    warnings = []
+    warnings = list(charge_warning(asked.model, math.prod(piece.n_cells)))
     if levels.is_open_shell:
         warnings.append("Open shell: the highest group is partly filled and counted evenly; the gap is 0.")
     lonely = result.lonely

@@ -39,6 +39,15 @@ _NAMED = ("site", "from", "to")
 CHANGES = (("site", "alpha"), ("site", "remove"), ("from", "to", "beta"))
 
 
+def charge_warning(model: Model, n_cells: int) -> tuple[str, ...]:
+    """Return what a reader could be misled by where a charged cell is repeated: the charge counts for each."""
+    missing = sum(site.electrons for site in model.sites) - model.n_electrons
+    if not missing or n_cells < 2 or not model.dimension:
+        return ()
+    number = f"{abs(missing) * n_cells:g} electrons {'fewer' if missing > 0 else 'more'}"
+    return (f"Charge and electrons count for the cell: this piece has {number} than its sites bring.",)
+
+
 def inspect_piece(study: Mapping[str, Any], model: Model | None) -> list[Problem]:
     """Return what is wrong with a piece: its cells, its ends, names that no site has, changes of no kind or outside.
 

@@ -11,7 +11,16 @@ from bandbook.cases.toml_lines import read_toml
 from bandbook.errors import Problem
 
 ID: Final = re.compile(r"[a-z0-9][a-z0-9.-]*(?:/[a-z0-9][a-z0-9.-]*)*\Z")
-RESERVED: Final = ("index", "figures", "tables", "index.md", "index.html", "record.json", "notebook.ipynb")
+RESERVED: Final = (
+    "index",
+    "figures",
+    "tables",
+    "index.md",
+    "index.html",
+    "record.json",
+    "notebook.ipynb",
+    "quantities.csv",
+)
 #: A file of the book is prose and numbers; anything larger is a mistake.
 MOST_BYTES: Final = 5_000_000
 

@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Callable
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -194,3 +195,11 @@ def test_groups_stand_side_by_side() -> None:
 
 def test_marks_at_one_energy_stand_apart() -> None:
     assert margin_columns(np.array([0.0, 0.0, 0.0, 5.0]), 10.0).tolist() == [0, 1, 2, 0]
+
+
+def test_a_charge_counts_for_each_cell_and_is_said(ask: Ask) -> None:
+    charged = replace(ALTERNATING, electrons=1.0)
+    told = "Charge and electrons count for the cell: this piece has 4 electrons fewer than its sites bring."
+    assert told in ask(charged, "levels", cells=4).warnings
+    assert not any("count for the cell" in warning for warning in ask(charged, "levels", cells=1).warnings)
+    assert not any("count for the cell" in warning for warning in ask(ALTERNATING, "levels", cells=4).warnings)
