@@ -17,6 +17,8 @@ from bandbook.records import Record
 
 #: Endings of the figures that a front page shows one of each.
 _KINDS_SHOWN = ("on-band", "orbitals", "bands", "sketch")
+#: Endings of the figures that are seen when they are small, the best first.
+_SMALL = ("bands", "on-band", "diagram", "series")
 #: Sign of a verdict → its word in the catalogue.
 _SIGNS = {"✓": "agree", "✗": "disagree or failed", "○": "none", "◌": "not run"}
 
@@ -53,10 +55,12 @@ def _dimensions(case: CaseView) -> list[str]:
 
 
 def _thumbnail(case: CaseView) -> str:
-    """Return the picture that stands for a case: its first system, otherwise its first figure, from the root."""
+    """Return the picture that stands for a case, from the root: one whose shape is seen when it is small."""
     exhibits = case.record.exhibits if case.record else ()
     figures = [one["file"] for one in exhibits if one["kind"] == "figure" and one["study"] != "workings"]
-    return f"cases/{case.id}/{figures[0]}" if figures else ""
+    chosen = (file for ending in _SMALL for file in figures if file.removesuffix(".svg").endswith(ending))
+    found = next(chosen, figures[0] if figures else "")
+    return f"cases/{case.id}/{found}" if found else ""
 
 
 def _first(case: CaseView, names: tuple[str, ...]) -> dict[str, Any] | None:

@@ -85,7 +85,7 @@ def test_the_catalogue_can_be_narrowed(make_book: MakeBook, case_text: str) -> N
     assert '<option value="one">one (1)</option>' in page
     assert 'data-tag="one|two"' in page
     assert 'data-dimension="1D"' in page
-    assert 'src="../cases/a/figures/system.svg"' in page
+    assert 'src="../cases/a/figures/levels-on-bands.svg"' in page
 
 
 def test_systems_in_words() -> None:

@@ -22,6 +22,8 @@ MOST_WHOLE: Final = 64
 #: Sites of either end of a longer one, and of a sheet that is drawn at all.
 AT_END: Final = 12
 MOST_OF_SHEET: Final = 160
+#: Bond lengths of the longest bond that is drawn.
+LONGEST: Final = 2.6
 #: Sites of the largest ring that is drawn as a circle.
 MOST_ON_CIRCLE: Final = 40
 
@@ -59,7 +61,7 @@ def sketch_piece(
     bonds = [
         row
         for row, (start, end) in enumerate(zip(piece.start, piece.end, strict=True))
-        if start in where and end in where and piece.beta[row] and (piece.is_ring or _is_near(places, start, end))
+        if start in where and end in where and piece.beta[row] and _is_near(places, start, end)
     ]
     words = _words(model, piece, marks, is_part=len(shown) < piece.n_sites)
     gone = _gone_places(layout, model, marks, slots)
@@ -177,8 +179,8 @@ def _gone_places(layout: Layout, model: Model, marks: _Marks, slots: Mapping[int
 
 
 def _is_near(places: Real, start: int, end: int) -> bool:
-    """Return whether a bond is drawn as a line; those across what is left out are not."""
-    return float(np.hypot(*(places[start] - places[end]))) < 6.0
+    """Return whether a bond is drawn as a line; those across what is left out, or back to the first cell, are not."""
+    return float(np.hypot(*(places[start] - places[end]))) < LONGEST
 
 
 def _draw_bonds(axes: Any, piece: Piece, places: Real, bonds: list[int], marks: _Marks) -> None:
@@ -237,7 +239,7 @@ def _words(model: Model, piece: Piece, marks: _Marks, *, is_part: bool) -> str:
         text = f"The molecule of {counted(piece.n_sites, 'site')}"
     else:
         sizes = " × ".join(str(size) for size in piece.n_cells)
-        ends = "joined to a ring" if piece.is_ring else "with open ends"
+        ends = "joined to a ring, first and last bonded" if piece.is_ring else "with open ends"
         text = f"{sizes} cell{'' if sizes == '1' else 's'} {ends}, {counted(piece.n_sites, 'site')}"
     parts = [
         (len(marks.added), "site added to close the far end", "sites added to close the far end"),
