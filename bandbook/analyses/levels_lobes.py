@@ -102,7 +102,7 @@ def _plane(axes: Any, asked: Asked, result: "LevelsResult", chosen: list[int]) -
         for place, coefficient in zip(here, result.levels.vectors[:, level], strict=True):
             lobes.add(float(place[0]), float(place[1]), coefficient)
         _label(axes, asked, result, level, (shift[0] + size[0] / 2, shift[1] - 0.62), centred=True)
-    line = np.array(lines)
+    line = np.array(lines).reshape(-1, 2)  # a piece may have no bond
     axes.plot(line[:, 0], line[:, 1], color=pen.LINE, linewidth=1.2, zorder=0)
     lobes.draw(axes)
     axes.set_aspect("equal")

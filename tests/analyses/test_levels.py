@@ -203,3 +203,15 @@ def test_a_charge_counts_for_each_cell_and_is_said(ask: Ask) -> None:
     assert told in ask(charged, "levels", cells=4).warnings
     assert not any("count for the cell" in warning for warning in ask(charged, "levels", cells=1).warnings)
     assert not any("count for the cell" in warning for warning in ask(ALTERNATING, "levels", cells=4).warnings)
+
+
+@pytest.mark.parametrize("dimension", [0, 1, 2, 3])
+def test_sites_without_any_bond_are_drawn(ask: Ask, dimension: int) -> None:
+    """Each level is the α of its site; there is a picture, with no line in it."""
+    lonely = Model((Site("A"), Site("B", alpha=1.0)), (), dimension=dimension)
+    cells = {0: {}, 1: {"cells": 2}}.get(dimension, {"cells": [2] * dimension})
+    answer = ask(lonely, "levels", **cells)
+    n_each = 2**dimension
+    found = [answer.value(f"energy_{n}") for n in range(1, 2 * n_each + 1)]
+    assert found == [0.0] * n_each + [1.0] * n_each
+    assert figure(answer, "orbitals").svg
