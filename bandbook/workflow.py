@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from bandbook import cases, notebooks, pages, papers, records, registry, report, store
-from bandbook.errors import AuthorError, BandbookError, IntegrityError, Problem, exit_status
+from bandbook.errors import AuthorError, BandbookError, IntegrityError, Problem, RunError, exit_status
 from bandbook.parameters import one_of
 from bandbook.settings import Settings
 
@@ -172,7 +172,11 @@ def _outcome(
             return Outcome(checked, "failed", failure=_kept(checked, shelf, error, key))
         status = "executed"
     assert result is not None  # noqa: S101 - fetched or just put
-    shelf.remember(checked.case.id, key)
+    try:
+        shelf.remember(checked.case.id, key)
+    except RunError as error:
+        if runner is not None:  # who only looks needs no list of keys
+            return Outcome(checked, "failed", failure=_kept(checked, shelf, error, key))
     shelf.forget_failure(checked.case.id)
     return Outcome(checked, status, result, records.make_record(checked, result, book))
 
